@@ -1,0 +1,151 @@
+"""Which atom neighbourhoods are known: a compact count table from the open shift data.
+
+The neighbourhood of an atom (radius 1, hydrogens counted) is written as one short text: the atom's token, then in brackets
+each bond with the neighbour's token, sorted. A token is the element symbol (lower case: aromatic), its charge, `D` and the
+number of heavy neighbours, `H` and the number of hydrogens, and `R` for a ring atom that is not aromatic. Ethanol's CH2 is
+``CD2H2(-CD1H3 -OD1H1)``; with square brackets around each token it reads as SMARTS.
+"""
+
+from __future__ import annotations
+
+import gzip
+from collections import Counter
+from collections.abc import Iterable
+from functools import lru_cache
+from importlib.resources import files
+from pathlib import Path
+
+from rdkit import Chem
+
+from shiftpred.errors import BundleError, StructureError, quote
+
+TABLE_NAME = "neighbourhood_counts.tsv.gz"
+"""In `tables/` beside this file."""
+
+_BOND_SIGNS = {
+    Chem.BondType.SINGLE: "-",
+    Chem.BondType.DOUBLE: "=",
+    Chem.BondType.TRIPLE: "#",
+    Chem.BondType.AROMATIC: ":",
+    Chem.BondType.DATIVE: ">",
+}
+_HEADING = (
+    "# Atom neighbourhoods (radius 1, hydrogens counted) and the number of compounds that hold them.",
+    "# Derived statistic of {compounds} structures of the open data of nmrshiftdb2 (Kuhn and Schlörer, Magn. Reson. Chem. "
+    "2015, 53, 582; Steinbeck, Krause and Kuhn, J. Chem. Inf. Comput. Sci. 2003, 43, 1733); no structure, no peak.",
+    "# Notation: see shiftpred/structures/rivals/neighbourhoods.py. Columns: neighbourhood, compounds.",
+)
+
+
+@lru_cache(maxsize=8192)
+def _token(atomic_number: int, aromatic: bool, degree: int, hydrogens: int, charge: int, in_ring: bool) -> str:
+    symbol = Chem.GetPeriodicTable().GetElementSymbol(atomic_number) if atomic_number else "*"
+    sign = ("+" if charge > 0 else "-") * abs(charge)
+    ring = "R" if in_ring and not aromatic else ""
+    return f"{symbol.lower() if aromatic else symbol}{sign}D{degree}H{hydrogens}{ring}"
+
+
+def compute_neighbourhoods(mol: Chem.Mol, radius: int = 1) -> list[str]:
+    """Return the neighbourhood of every atom as text.
+
+    Parameters
+    ----------
+    mol : rdkit.Chem.Mol
+        Sanitised, hydrogens implicit.
+    radius : int, default 1
+        Bonds that are looked at around each atom. 0 gives the bare tokens.
+
+    Returns
+    -------
+    list of str, of length n_atoms
+        In the order of the atoms.
+
+    Examples
+    --------
+    >>> compute_neighbourhoods(Chem.MolFromSmiles("CCO"))[1]
+    'CD2H2(-CD1H3 -OD1H1)'
+    """
+    words = [
+        _token(
+            atom.GetAtomicNum(),
+            atom.GetIsAromatic(),
+            atom.GetDegree(),
+            atom.GetTotalNumHs(),
+            atom.GetFormalCharge(),
+            atom.IsInRing(),
+        )
+        for atom in mol.GetAtoms()
+    ]
+    bonds = [
+        (bond.GetBeginAtomIdx(), bond.GetEndAtomIdx(), _BOND_SIGNS.get(bond.GetBondType(), "~"))
+        for bond in mol.GetBonds()
+    ]
+    for _ in range(radius):
+        around: list[list[str]] = [[] for _ in words]
+        for begin, end, sign in bonds:
+            around[begin].append(sign + words[end])
+            around[end].append(sign + words[begin])
+        words = [f"{word}({' '.join(sorted(neighbours))})" for word, neighbours in zip(words, around, strict=True)]
+    return words
+
+
+def build_neighbourhood_table(smiles: Iterable[str]) -> tuple[dict[str, int], int]:
+    """Count in how many compounds each radius-1 neighbourhood occurs.
+
+    Parameters
+    ----------
+    smiles : iterable of str
+        One compound each.
+
+    Returns
+    -------
+    counts : dict of str to int
+        Neighbourhood and number of compounds.
+    n_compounds : int
+        Compounds that were counted.
+
+    Raises
+    ------
+    StructureError
+        If a SMILES cannot be read.
+    """
+    counts: Counter[str] = Counter()
+    n_compounds = 0
+    for row, text in enumerate(smiles, start=1):
+        mol = Chem.MolFromSmiles(text)
+        if mol is None:
+            raise StructureError(f"compound {row}", quote(text), "a valid SMILES", "leave this compound out")
+        counts.update(set(compute_neighbourhoods(mol)))
+        n_compounds += 1
+    return dict(counts), n_compounds
+
+
+def save_neighbourhood_table(path: Path, counts: dict[str, int], n_compounds: int) -> None:
+    """Write the table; the same counts always give the same bytes."""
+    lines = [line.format(compounds=n_compounds) for line in _HEADING]
+    lines += [f"{neighbourhood}\t{number}" for neighbourhood, number in sorted(counts.items())]
+    path.write_bytes(gzip.compress(("\n".join(lines) + "\n").encode(), 9, mtime=0))
+
+
+@lru_cache(maxsize=1)
+def load_neighbourhood_table() -> dict[str, int]:
+    """Return neighbourhood → number of compounds, read once.
+
+    Raises
+    ------
+    BundleError
+        If the shipped table is damaged.
+    """
+    source = files("shiftpred.structures.rivals") / "tables" / TABLE_NAME
+    try:
+        lines = gzip.decompress(source.read_bytes()).decode().splitlines()
+        counts = {}
+        for line in lines:
+            if not line.startswith("#"):
+                neighbourhood, number = line.split("\t")
+                counts[neighbourhood] = int(number)
+    except (OSError, EOFError, ValueError) as error:
+        raise BundleError(
+            f"table {TABLE_NAME}", quote(str(error)), "the table as shipped", "install shiftpred again"
+        ) from error
+    return counts

@@ -1,0 +1,92 @@
+"""Would a chemist believe it: known atom neighbourhoods, and no functional group that does not survive."""
+
+from __future__ import annotations
+
+from functools import lru_cache
+
+from rdkit import Chem
+
+from shiftpred.structures.rivals.neighbourhoods import compute_neighbourhoods, load_neighbourhood_table
+
+FEWEST_COMPOUNDS = 3
+"""Compounds of the open table in which a neighbourhood must occur before a rival may bring it in (own choice: a neighbourhood
+seen once or twice may come from a wrong structure)."""
+
+UNLIKELY_GROUPS = (
+    # what it is, SMARTS; general chemical knowledge, no single source
+    ("peroxide", "[OX2,OX1-]~[OX2]"),
+    ("N-N bond outside an aromatic ring", "[NX3,NX2;!$([N+])]-[NX3,NX2;!$([N+])]"),
+    ("N-O bond outside an aromatic ring", "[NX3,NX2;+0]-[OX2]"),
+    ("N-S, S-S or S-O bond", "[SX2]-[SX2,NX3,NX2,OX2]"),
+    ("heteroatom-halogen bond", "[#7,#8,#16X2]-[F,Cl,Br,I]"),
+    ("hemiacetal, hemiaminal, halohydrin on one carbon", "[CX4]([OX2H1,SX2H1])[OX2,NX3,SX2,F,Cl,Br,I]"),
+    ("aminal or N,O-acetal", "[CX4]([NX3;!$(N-[C,S]=[O,S])])[NX3,OX2,SX2,F,Cl,Br,I]"),
+    ("amido acetal", "[CX4]([NX3;$(N-[C,S]=[O,S])])[NX3,OX2,SX2,F,Cl,Br,I]"),
+    ("alpha-halo ether or thioether", "[CX4]([F,Cl,Br,I])[OX2,SX2]"),
+    ("two different halogens or two halogens on one carbon", "[CX4]([F,Cl,Br,I])[F,Cl,Br,I]"),
+    ("dithio- or oxathioacetal", "[CX4]([SX2])[SX2,OX2]"),
+    ("acetal", "[CX4]([OX2])[OX2]"),
+    ("quaternary azole-N aminal", "[CX4](n)[OX2,NX3,SX2,F,Cl,Br,I]"),
+    ("orthoester", "[CX4]([OX2])([OX2])[OX2]"),
+    ("carbamic or carbonic half acid", "[NX3,OX2][CX3](=O)[OX2H1]"),
+    ("acyl halide", "[CX3](=[O,S,N])[F,Cl,Br,I]"),
+    ("acyl carbonyl acid anhydride", "[CX3](=O)[OX2][CX3]=O"),
+    ("enol or imidic acid", "[OX2H1,SX2H1][CX3]=[C,N]"),
+    ("enamine with N-H", "[NX3;H1,H2][CX3;!$(C=[O,N,S])]=[CX3;!$(C[C,N,S]=[O,N])]"),
+    ("ynol, ynamine", "[CX2]#[CX2][O,N,S]"),
+    ("alkynyl halide", "[CX2]#[CX2][F,Cl,Br,I]"),
+    ("cumulated double bonds", "[#6,#7]=[#6]=[#6,#7,#8,#16]"),
+    ("imine with N-H", "[NX2H1]=[#6]"),
+    ("imine of formaldehyde", "[CX3H2]=[NX2]"),
+    ("isobenzofuran, isobenzothiophene, 2H-isoindole", "[o,s,n;r5]1cc2aaaac2c1"),
+    ("nitrosamine, nitrite", "[N,O]-N=O"),
+    ("N-acyl-O bond", "[OX2][NX3][CX3]=O"),
+    ("isocyanide", "[C-]#[N+]"),
+    ("small ring with a double bond", "[CX3;r3,r4]=[CX3;r3,r4]"),
+    ("double bond on a three-membered ring", "[CX3;r3]=*"),
+    ("thioaldehyde or thioketone", "[CX3;!$(C[N,O,S])]=[SX1]"),
+    ("thiocarboxylic half", "[CX3](=O)[SX2H1]"),
+    ("geminal diamine or diol aromatic-free", "[CX4;H2]([N,O,S])[N,O,S]"),
+    ("alpha-halo amine", "[CX4]([F,Cl,Br,I])[#7]"),
+)
+
+
+@lru_cache(maxsize=1)
+def _unlikely_queries() -> tuple[Chem.Mol, ...]:
+    return tuple(Chem.MolFromSmarts(smarts) for _, smarts in UNLIKELY_GROUPS)
+
+
+class PlausibilityFilter:
+    """Judges rivals beside one proposal: what the proposal itself has is taken as given.
+
+    Parameters
+    ----------
+    proposal : rdkit.Chem.Mol
+        Sanitised, hydrogens implicit.
+    """
+
+    def __init__(self, proposal: Chem.Mol):
+        self._own = frozenset(compute_neighbourhoods(proposal))
+        self._table = load_neighbourhood_table()
+        self._unlikely = [
+            (query, len(proposal.GetSubstructMatches(query, maxMatches=50))) for query in _unlikely_queries()
+        ]
+
+    def accepts(self, rival: Chem.Mol) -> bool:
+        """Tell whether every neighbourhood is known (or the proposal's own) and no unlikely group is new."""
+        if not self.accepts_neighbourhoods(rival):
+            return False
+        for query, before in self._unlikely:
+            if before:
+                if len(rival.GetSubstructMatches(query, maxMatches=50)) > before:
+                    return False
+            elif rival.HasSubstructMatch(query):
+                return False
+        return True
+
+    def accepts_neighbourhoods(self, rival: Chem.Mol) -> bool:
+        """Tell whether every neighbourhood is known or the proposal's own."""
+        return all(
+            neighbourhood in self._own or self._table.get(neighbourhood, 0) >= FEWEST_COMPOUNDS
+            for neighbourhood in compute_neighbourhoods(rival)
+        )

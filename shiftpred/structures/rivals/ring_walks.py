@@ -1,0 +1,189 @@
+"""Isomers by what sits where on a ring: substituents walked or swapped, heteroatoms walked, azole N-substituents moved.
+
+All of them are one edit: two atoms of a ring change places with everything that hangs on them.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from functools import partial
+from itertools import combinations
+
+from rdkit import Chem
+
+from shiftpred.structures.rivals.graph_edits import swap_ring_atoms
+from shiftpred.structures.rivals.workspace import Candidate, Workspace
+
+_LARGEST_WHOLE_RING = 8
+"""In a larger ring only places up to two bonds apart are exchanged."""
+_BENZENE_PLACES = {1: "ortho", 2: "meta", 3: "para"}
+
+
+def build_walked_substituents(workspace: Workspace) -> Iterator[Candidate]:
+    """Walk each ring substituent to every free place of its ring (of its fused system, where that is aromatic)."""
+    for first, second in _pairs(workspace):
+        if workspace.element[first] == workspace.element[second] == 6:
+            free = [not workspace.exocyclic(index) for index in (first, second)]
+            if free[0] != free[1]:
+                old, new = (second, first) if free[0] else (first, second)
+                yield Candidate(
+                    edit=partial(_swap, workspace, old, new),
+                    how=partial(_describe_walk, workspace, old, new),
+                    key=_symmetry_key(workspace, old, new),
+                    penalty=_apart(workspace, old, new),
+                )
+
+
+def build_swapped_substituents(workspace: Workspace) -> Iterator[Candidate]:
+    """Let two different substituents of one ring change places."""
+    for first, second in _pairs(workspace):
+        if workspace.element[first] == workspace.element[second] == 6:
+            groups = workspace.exocyclic(first), workspace.exocyclic(second)
+            if all(groups) and not _alike(workspace, *groups):
+                yield Candidate(
+                    edit=partial(_swap, workspace, first, second),
+                    how=partial(_describe_swap, workspace, first, second),
+                    key=_symmetry_key(workspace, *sorted((first, second), key=lambda index: workspace.ranks[index])),
+                    penalty=_apart(workspace, first, second),
+                )
+
+
+def build_walked_ring_heteroatoms(workspace: Workspace) -> Iterator[Candidate]:
+    """Walk nitrogen, oxygen, sulfur, … of a ring to another place of it: azines, azoles, saturated heterocycles."""
+    for first, second in _pairs(workspace):
+        elements = workspace.element[first], workspace.element[second]
+        if elements[0] != elements[1]:
+            # the heteroatom walks; of two heteroatoms, the heavier one
+            walker, other = (first, second) if (elements[0] != 6 and elements[0] > elements[1]) else (second, first)
+            if workspace.element[walker] == 6:
+                walker, other = other, walker
+            yield Candidate(
+                edit=partial(_swap, workspace, walker, other),
+                how=partial(_describe_heteroatom_walk, workspace, walker, other),
+                key=_symmetry_key(workspace, walker, other),
+                penalty=0.1 if workspace.exocyclic(walker) or workspace.exocyclic(other) else 0.0,
+            )
+
+
+def build_azole_nitrogen_isomers(workspace: Workspace) -> Iterator[Candidate]:
+    """Move an azole's N-substituent to another nitrogen of its ring: N1/N2, 1,4/1,5-triazole, 4/5-substituted imidazole."""
+    for first, second in _pairs(workspace):
+        if workspace.element[first] == workspace.element[second] == 7 and workspace.aromatic[first]:
+            carries = [bool(workspace.exocyclic(index)) for index in (first, second)]
+            if carries[0] != carries[1]:
+                old, new = (first, second) if carries[0] else (second, first)
+                if workspace.charge[old] == workspace.charge[new] == 0 and workspace.hydrogens[new] == 0:
+                    yield Candidate(
+                        edit=partial(_swap, workspace, old, new),
+                        how=partial(_describe_azole, workspace, old, new),
+                        key=_symmetry_key(workspace, old, new),
+                    )
+
+
+def _swap(workspace: Workspace, first: int, second: int, editable: Chem.RWMol) -> None:
+    swap_ring_atoms(workspace, editable, first, second)
+
+
+def _pairs(workspace: Workspace) -> Iterator[tuple[int, int]]:
+    """Yield pairs of ring atoms with two ring bonds each, in one aromatic system or one other ring, not alike by symmetry."""
+    units = list(workspace.aromatic_systems)
+    units += [ring for ring in workspace.rings if not all(workspace.aromatic[index] for index in ring)]
+    seen = set()
+    for unit in units:
+        movable = [index for index in unit if workspace.ring_degree[index] == 2]
+        for first, second in combinations(sorted(movable), 2):
+            if (first, second) in seen or workspace.ranks[first] == workspace.ranks[second]:
+                continue
+            if workspace.aromatic[first] != workspace.aromatic[second]:
+                continue
+            if len(unit) > _LARGEST_WHOLE_RING and not workspace.aromatic[first]:
+                if workspace.distance[first][second] > 2:
+                    continue
+            seen.add((first, second))
+            yield first, second
+
+
+def _symmetry_key(workspace: Workspace, first: int, second: int) -> tuple[int, int, int]:
+    return workspace.ranks[first], workspace.ranks[second], workspace.distance[first][second]
+
+
+def _apart(workspace: Workspace, first: int, second: int) -> float:
+    """Penalise slightly what goes from one ring of a fused system into another."""
+    return 0.0 if workspace.same_ring(first, second) else 0.05
+
+
+def _alike(workspace: Workspace, groups: list[int], others: list[int]) -> bool:
+    """Tell whether both places carry the same one-atom substituents."""
+    kinds = [
+        sorted((workspace.element[g], workspace.hydrogens[g], workspace.degree[g]) for g in side)
+        for side in (groups, others)
+    ]
+    return kinds[0] == kinds[1] and all(degree == 1 for _, _, degree in kinds[0])
+
+
+def _names(workspace: Workspace, index: int) -> str:
+    return " and ".join(workspace.group_name(index, group) for group in workspace.exocyclic(index))
+
+
+def _ring_of(workspace: Workspace, first: int, second: int) -> tuple[int, ...]:
+    """Return the smallest ring with both atoms, or () when they lie in two rings of a fused system."""
+    return min((ring for ring in workspace.rings if first in ring and second in ring), key=len, default=())
+
+
+def _describe_walk(workspace: Workspace, old: int, new: int) -> str:
+    name = _names(workspace, old)
+    ring = _ring_of(workspace, old, new)
+    hetero = [index for index in ring if workspace.element[index] != 6]
+    if len(ring) == 6 and not hetero and workspace.aromatic[old]:
+        others = [index for index in ring if index not in (old, new) and workspace.exocyclic(index)]
+        others = [i for i in others if workspace.ring_degree[i] == 2] or others
+        if others:
+            # the most telling reference: a heteroatom on the ring, else the largest group
+            anchor = min(
+                others,
+                key=lambda index: (
+                    all(workspace.element[group] == 6 for group in workspace.exocyclic(index)),
+                    -len(workspace.side(index, workspace.exocyclic(index)[0])),
+                    index,
+                ),
+            )
+            places = [_BENZENE_PLACES[workspace.distance[anchor][index]] for index in (old, new)]
+            if places[0] != places[1]:
+                return f"{name} walked from {places[0]} to {places[1]} of {_names(workspace, anchor)}"
+    if hetero:
+        anchor = min(hetero, key=lambda index: (abs(workspace.distance[index][old]), -workspace.element[index], index))
+        before, after = workspace.distance[anchor][old], workspace.distance[anchor][new]
+        if before != after:
+            return (
+                f"{name} walked around the ring, from {before} to {after} {_bonds(after)} away from the ring's "
+                f"{workspace.element_word(anchor)}"
+            )
+    if not ring:
+        return f"{name} walked to another place of the fused rings, {_places(workspace.distance[old][new])} away"
+    return f"{name} walked {_places(workspace.distance[old][new])} around the ring"
+
+
+def _describe_swap(workspace: Workspace, first: int, second: int) -> str:
+    names = sorted((_names(workspace, first), _names(workspace, second)))
+    return f"{names[0]} and {names[1]} swapped on the ring"
+
+
+def _describe_heteroatom_walk(workspace: Workspace, walker: int, other: int) -> str:
+    word = workspace.element_word(walker)
+    distance = workspace.distance[walker][other]
+    if workspace.element[other] != 6:
+        return f"{word} and {workspace.element_word(other)} of the ring swapped"
+    return f"ring {word} walked {_places(distance)}"
+
+
+def _describe_azole(workspace: Workspace, old: int, new: int) -> str:
+    where = "the neighbouring" if workspace.distance[old][new] == 1 else "the other"
+    return f"{_names(workspace, old)} on {where} nitrogen of the azole"
+
+
+def _places(number: int) -> str:
+    return "one place" if number == 1 else f"{number} places"
+
+
+def _bonds(number: int) -> str:
+    return "bond" if number == 1 else "bonds"
