@@ -1,1 +1,1 @@
-"""TODO"""
+"""One site → one named row, and one molecule → arrays for the environment model."""

@@ -1,0 +1,108 @@
+"""Which site label is which atom: the optimal assignment of one compound's peaks under the present prediction.
+
+Cost of a pair: |d13C|/2.0 (at most 40 ppm count) + |d1H|/0.35 (at most 4 ppm); a wrong hydrogen count is forbidden. The
+alternation of assignment and fit follows Kang, Kwon, Lee & Choi, J. Chem. Inf. Comput. Sci. 2020 (doi 10.1021/acs.jcim.0c00494,
+doi from memory).
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from rdkit import Chem
+from scipy.optimize import linear_sum_assignment
+
+from shiftpred.training.open_tables import Compound
+
+__all__ = ["PeakPlacer"]
+
+_FORBIDDEN = 1e3
+_CAP = np.array([40.0, 4.0])
+_UNIT = np.array([2.0, 0.35])
+
+
+class PeakPlacer:
+    """Places the peaks of one compound on its atoms.
+
+    Parameters
+    ----------
+    compound : Compound
+    hydrogen_counts : bool, default True
+        False ignores the hydrogen counts that the source states.
+    pairs : bool, default True
+        False lets the 13C and the 1H peak of one label go to different atoms (for counting how often they agree).
+    """
+
+    def __init__(self, compound: Compound, hydrogen_counts: bool = True):
+        mol = compound.mol
+        self.n_atoms = mol.GetNumAtoms()
+        is_carbon = np.array([a.GetAtomicNum() == 6 for a in mol.GetAtoms()])
+        n_h = np.array([a.GetTotalNumHs() for a in mol.GetAtoms()])
+        self.has_c, self.has_h = ~np.isnan(compound.c13), ~np.isnan(compound.h1)
+        kind = compound.attached_h if hydrogen_counts else np.full(len(compound.c13), -1)
+        forbidden = (
+            (self.has_c[:, None] & ~is_carbon)
+            | (self.has_h[:, None] & (n_h == 0))
+            | ((kind >= 0)[:, None] & (kind[:, None] != n_h))
+        )
+        self.base = _FORBIDDEN * forbidden
+        self.observed = np.nan_to_num(np.stack([compound.c13, compound.h1], axis=1))
+        self.group = np.array(list(Chem.CanonicalRankAtoms(mol, breakTies=False)))
+        self.possible = len(compound.c13) <= self.n_atoms
+
+    def compute_costs(self, predicted: np.ndarray) -> np.ndarray:
+        """Return (n_sites, n_atoms) costs for `predicted` of shape (n_atoms, 2), ppm; nan: no prediction there."""
+        p = np.where(np.isnan(predicted), 1e6, predicted)
+        difference = np.minimum(np.abs(self.observed[:, None, :] - p[None]), _CAP) / _UNIT
+        return self.base + difference[:, :, 0] * self.has_c[:, None] + difference[:, :, 1] * self.has_h[:, None]
+
+    def assign(self, predicted: np.ndarray) -> np.ndarray:
+        """Return (n_sites,) the atom index of each site label, -1 where the label can go nowhere."""
+        out = np.full(len(self.observed), -1)
+        if not self.possible:
+            return out
+        cost = self.compute_costs(predicted)
+        rows, columns = linear_sum_assignment(cost)
+        good = cost[rows, columns] < _FORBIDDEN / 2
+        out[rows[good]] = columns[good]
+        return out
+
+    def assign_unambiguous(self) -> np.ndarray:
+        """Return (n_sites,) atom indices of the labels that can only go to one set of equivalent atoms, else -1."""
+        out = np.full(len(self.observed), -1)
+        if not self.possible:
+            return out
+        taken = set()
+        for k in range(len(out)):
+            places = np.flatnonzero(self.base[k] == 0)
+            if len(places) and len(set(self.group[places])) == 1:
+                free = [a for a in places if a not in taken]
+                if free:
+                    out[k] = free[0]
+                    taken.add(free[0])
+        return out
+
+    def place(self, values: np.ndarray, assignment: np.ndarray) -> np.ndarray:
+        """Put site values on atoms and average them over equivalent atoms.
+
+        Parameters
+        ----------
+        values : ndarray of shape (n_sites, k)
+        assignment : ndarray of shape (n_sites,)
+
+        Returns
+        -------
+        ndarray of shape (n_atoms, k); nan: no peak there.
+        """
+        y = np.full((self.n_atoms, values.shape[1]), np.nan)
+        used = assignment >= 0
+        y[assignment[used]] = values[used]
+        n_groups = self.group.max() + 1
+        if n_groups == self.n_atoms and len(np.unique(self.group)) == self.n_atoms:
+            return y
+        known = ~np.isnan(y)
+        for k in range(values.shape[1]):
+            count = np.bincount(self.group, weights=known[:, k], minlength=n_groups)
+            total = np.bincount(self.group, weights=np.where(known[:, k], y[:, k], 0), minlength=n_groups)
+            with np.errstate(invalid="ignore", divide="ignore"):
+                y[:, k] = (total / count)[self.group]
+        return y
