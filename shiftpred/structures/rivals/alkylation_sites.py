@@ -14,7 +14,10 @@ _BEARERS = frozenset({7, 8, 16})
 
 
 def build_lactam_lactim_alkyls(workspace: Workspace) -> Iterator[Candidate]:
-    """Exchange C(-O-R)=N for C(=O)-N(R) and the reverse, also across a conjugated ring: 2-methoxypyridine, N-methyl-2-pyridone."""
+    """Exchange C(-O-R)=N for C(=O)-N(R) and the reverse, also across a conjugated ring.
+
+    2-Methoxypyridine and N-methyl-2-pyridone, 4-methoxyquinoline and N-methyl-4-quinolone.
+    """
     for carbon in range(workspace.n_atoms):
         if workspace.element[carbon] != 6:
             continue
@@ -122,6 +125,5 @@ def _make_ether(carbon: int, chalcogen: int, group: int, nitrogen: int, editable
 
 
 def _describe_lactam(workspace: Workspace, cut: int, group: int, old: int, new: int) -> str:
-    return (
-        f"{workspace.group_name(cut, group)} on {workspace.element_word(new)} instead of {workspace.element_word(old)}"
-    )
+    words = workspace.element_word(new), workspace.element_word(old)
+    return f"{workspace.group_name(cut, group)} on {words[0]} instead of {words[1]}"

@@ -1,4 +1,4 @@
-"""Isomers by where something sits on a chain: groups moved along it, alkyls branched, double and triple bonds walked."""
+"""Isomers by where something sits on a chain: groups moved along it, alkyls branched, multiple bonds walked."""
 
 from __future__ import annotations
 
@@ -245,12 +245,8 @@ def _describe_chain_move(workspace: Workspace, group: int, old: int, new: int, s
 
 
 def _describe_methyl_move(workspace: Workspace, old: int, new: int) -> str:
-    places = [
-        "an aromatic carbon" if workspace.aromatic[index] else f"a {workspace.element_word(index)}"
+    before, after = (
+        f"aromatic {workspace.element_word(index)}" if workspace.aromatic[index] else workspace.element_word(index)
         for index in (old, new)
-    ]
-    if workspace.element[old] == 8 and not workspace.aromatic[old]:
-        places[0] = "an oxygen"
-    if places[0] == places[1]:
-        return f"methyl moved to another {places[1].split(' ', 1)[1]}"
-    return f"methyl moved from {places[0]} to {places[1]}"
+    )
+    return f"methyl moved to another {after}" if before == after else f"methyl moved from {before} to {after}"

@@ -31,8 +31,8 @@ def forget_centre(editable: Chem.RWMol, *indices: int) -> None:
 def move_bond(editable: Chem.RWMol, kept: int, old: int, new: int) -> None:
     """Replace the bond kept-old by kept-new of the same type.
 
-    The configuration at `kept` stays: its tag refers to the order of its bonds, and the new bond comes last in that order.
-    Double bonds whose geometry refers to `old` refer to `new` afterwards.
+    The configuration at `kept` stays: its tag refers to the order of its bonds, and the new bond comes last in that
+    order. Double bonds whose geometry refers to `old` refer to `new` afterwards.
     """
     atom = editable.GetAtomWithIdx(kept)
     partners = [bond.GetOtherAtomIdx(kept) for bond in atom.GetBonds()]

@@ -127,7 +127,7 @@ def compute_group_name(mol: Chem.Mol, cut: int, first: int) -> str:
     -------
     str
         'methyl', 'methoxycarbonyl', …; an unnamed small group as 'group *CCN' in SMILES with the open bond as '*'; an
-        unnamed large one as 'a group of 14 heavy atoms'.
+        unnamed large one as 'acylamino group of 14 heavy atoms'.
 
     Examples
     --------
@@ -143,4 +143,34 @@ def compute_group_name(mol: Chem.Mol, cut: int, first: int) -> str:
     if name is not None:
         return name
     n_heavy = len(atoms) - 1
-    return f"group {smiles}" if n_heavy <= _LONGEST_SHOWN else f"a group of {n_heavy} heavy atoms"
+    if n_heavy <= _LONGEST_SHOWN:
+        return f"group {smiles}"
+    return f"{_head_word(mol, cut, first)} group of {n_heavy} heavy atoms"
+
+
+def _head_word(mol: Chem.Mol, cut: int, first: int) -> str:
+    """Say how a large group begins: 'acylamino', 'aryl', …"""
+    atom = mol.GetAtomWithIdx(first)
+    symbol = atom.GetSymbol()
+    others = [other for other in atom.GetNeighbors() if other.GetIdx() != cut]
+    if atom.GetIsAromatic():
+        return "heteroaryl" if symbol != "C" or _ring_has_heteroatom(mol, first) else "aryl"
+    if symbol == "C" and _has_oxo(atom):
+        elements = {other.GetSymbol() for other in others if other.GetTotalDegree() > 1}
+        return "carboxamide" if "N" in elements else "ester" if "O" in elements else "acyl"
+    if symbol == "S" and _has_oxo(atom):
+        return "sulfonyl"
+    words = {"N": ("amino", "acylamino"), "O": ("oxy", "acyloxy"), "S": ("sulfanyl", "acylsulfanyl")}
+    return words.get(symbol, ("alkyl", "alkyl"))[any(_has_oxo(other) for other in others)]
+
+
+def _has_oxo(atom: Chem.Atom) -> bool:
+    return any(
+        bond.GetBondType() == Chem.BondType.DOUBLE and bond.GetOtherAtom(atom).GetSymbol() in ("O", "S")
+        for bond in atom.GetBonds()
+    )
+
+
+def _ring_has_heteroatom(mol: Chem.Mol, index: int) -> bool:
+    rings = (ring for ring in mol.GetRingInfo().AtomRings() if index in ring)
+    return any(mol.GetAtomWithIdx(other).GetAtomicNum() != 6 for ring in rings for other in ring)

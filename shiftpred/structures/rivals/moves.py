@@ -17,7 +17,8 @@ class Move:
     kind: str
     """'isomer', 'stereoisomer' or 'reaction', as in `shiftpred.records.Rival`."""
     weight: float
-    """How unusual this confusion is, 0 for what is mixed up most often. Our own order of common practice, no source."""
+    """How unusual this confusion is. Below 0 for what chemistry mixes up although the environments differ much (O- and
+    N-alkylation). Our own order of common practice, no source."""
     crowding: float
     """Added for each rival of this move that is already on the list, so that kinds mix."""
 
@@ -27,13 +28,15 @@ class Move:
 
 
 MOVES = (
-    Move(alkylation_sites.build_lactam_lactim_alkyls, "isomer", 0.0, 0.15),
-    Move(alkylation_sites.build_moved_heteroatom_groups, "isomer", 0.05, 0.12),
-    Move(ring_walks.build_azole_nitrogen_isomers, "isomer", 0.0, 0.10),
+    Move(alkylation_sites.build_lactam_lactim_alkyls, "isomer", -0.2, 0.15),
+    Move(alkylation_sites.build_moved_heteroatom_groups, "isomer", -0.05, 0.12),
+    Move(ring_walks.build_azole_nitrogen_isomers, "isomer", -0.1, 0.10),
     Move(ring_walks.build_walked_substituents, "isomer", 0.0, 0.06),
     Move(ring_walks.build_swapped_substituents, "isomer", 0.1, 0.10),
     Move(ring_walks.build_walked_ring_heteroatoms, "isomer", 0.15, 0.10),
-    Move(turned_groups.build_turned_groups, "isomer", 0.05, 0.12),
+    Move(ring_walks.build_exchanged_ring_heteroatoms, "isomer", 0.1, 0.12),
+    Move(ring_walks.build_refused_rings, "isomer", 0.1, 0.12),
+    Move(turned_groups.build_turned_groups, "isomer", 0.0, 0.12),
     Move(chains.build_branched_alkyls, "isomer", 0.1, 0.10),
     Move(chains.build_groups_moved_along_chain, "isomer", 0.15, 0.10),
     Move(chains.build_walked_multiple_bonds, "isomer", 0.2, 0.12),

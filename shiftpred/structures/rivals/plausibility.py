@@ -6,10 +6,15 @@ from functools import lru_cache
 
 from rdkit import Chem
 
-from shiftpred.structures.rivals.neighbourhoods import compute_neighbourhoods, load_neighbourhood_table
+from shiftpred.structures.rivals.neighbourhoods import (
+    compute_neighbourhoods,
+    compute_wide_sums,
+    load_neighbourhood_table,
+    load_wide_sums,
+)
 
 FEWEST_COMPOUNDS = 3
-"""Compounds of the open table in which a neighbourhood must occur before a rival may bring it in (own choice: a neighbourhood
+"""Compounds of the open table in which a neighbourhood must occur before a rival may bring it in (own choice: what was
 seen once or twice may come from a wrong structure)."""
 
 UNLIKELY_GROUPS = (
@@ -23,14 +28,14 @@ UNLIKELY_GROUPS = (
     ("aminal or N,O-acetal", "[CX4]([NX3;!$(N-[C,S]=[O,S])])[NX3,OX2,SX2,F,Cl,Br,I]"),
     ("amido acetal", "[CX4]([NX3;$(N-[C,S]=[O,S])])[NX3,OX2,SX2,F,Cl,Br,I]"),
     ("alpha-halo ether or thioether", "[CX4]([F,Cl,Br,I])[OX2,SX2]"),
-    ("two different halogens or two halogens on one carbon", "[CX4]([F,Cl,Br,I])[F,Cl,Br,I]"),
+    ("two halogens on one carbon", "[CX4]([F,Cl,Br,I])[F,Cl,Br,I]"),
     ("dithio- or oxathioacetal", "[CX4]([SX2])[SX2,OX2]"),
     ("acetal", "[CX4]([OX2])[OX2]"),
-    ("quaternary azole-N aminal", "[CX4](n)[OX2,NX3,SX2,F,Cl,Br,I]"),
+    ("heteroatom on the carbon that an azole nitrogen carries", "[CX4](n)[OX2,NX3,SX2,F,Cl,Br,I]"),
     ("orthoester", "[CX4]([OX2])([OX2])[OX2]"),
     ("carbamic or carbonic half acid", "[NX3,OX2][CX3](=O)[OX2H1]"),
     ("acyl halide", "[CX3](=[O,S,N])[F,Cl,Br,I]"),
-    ("acyl carbonyl acid anhydride", "[CX3](=O)[OX2][CX3]=O"),
+    ("acid anhydride", "[CX3](=O)[OX2][CX3]=O"),
     ("enol or imidic acid", "[OX2H1,SX2H1][CX3]=[C,N]"),
     ("enamine with N-H", "[NX3;H1,H2][CX3;!$(C=[O,N,S])]=[CX3;!$(C[C,N,S]=[O,N])]"),
     ("ynol, ynamine", "[CX2]#[CX2][O,N,S]"),
@@ -45,8 +50,9 @@ UNLIKELY_GROUPS = (
     ("small ring with a double bond", "[CX3;r3,r4]=[CX3;r3,r4]"),
     ("double bond on a three-membered ring", "[CX3;r3]=*"),
     ("thioaldehyde or thioketone", "[CX3;!$(C[N,O,S])]=[SX1]"),
-    ("thiocarboxylic half", "[CX3](=O)[SX2H1]"),
-    ("geminal diamine or diol aromatic-free", "[CX4;H2]([N,O,S])[N,O,S]"),
+    ("thiocarboxylic acid", "[CX3](=O)[SX2H1]"),
+    ("methylene between two heteroatoms", "[CX4;H2]([N,O,S])[N,O,S]"),
+    ("1,2-dione or N,N pair within one aromatic ring", "[$([#6;a](=O)[#6;a]=O),$([#7X3;a]:[#7X3;a])]"),
     ("alpha-halo amine", "[CX4]([F,Cl,Br,I])[#7]"),
 )
 
@@ -67,7 +73,9 @@ class PlausibilityFilter:
 
     def __init__(self, proposal: Chem.Mol):
         self._own = frozenset(compute_neighbourhoods(proposal))
+        self._own_wide = frozenset(compute_wide_sums(proposal))
         self._table = load_neighbourhood_table()
+        self._wide_sums = load_wide_sums()
         self._unlikely = [
             (query, len(proposal.GetSubstructMatches(query, maxMatches=50))) for query in _unlikely_queries()
         ]
@@ -90,3 +98,8 @@ class PlausibilityFilter:
             neighbourhood in self._own or self._table.get(neighbourhood, 0) >= FEWEST_COMPOUNDS
             for neighbourhood in compute_neighbourhoods(rival)
         )
+
+    def compute_unknown_share(self, rival: Chem.Mol) -> float:
+        """Return the share of atoms whose radius-2 neighbourhood is neither known nor the proposal's own."""
+        sums = compute_wide_sums(rival)
+        return sum(value not in self._wide_sums and value not in self._own_wide for value in sums) / len(sums)

@@ -1,4 +1,4 @@
-"""Neighbours by reaction: starting materials, lost protecting groups, hydrolysis, oxidation, reduction, another halogen.
+"""Neighbours by reaction: starting materials, lost protecting groups, hydrolysed, oxidised, reduced, another halogen.
 
 The reactions stand in `tables/reactions.tsv`, one a row, with the sentence that the chemist reads.
 """

@@ -11,7 +11,7 @@ from itertools import combinations
 
 from rdkit import Chem
 
-from shiftpred.structures.rivals.graph_edits import swap_ring_atoms
+from shiftpred.structures.rivals.graph_edits import forget_centre, move_group, swap_ring_atoms
 from shiftpred.structures.rivals.workspace import Candidate, Workspace
 
 _LARGEST_WHOLE_RING = 8
@@ -65,8 +65,30 @@ def build_walked_ring_heteroatoms(workspace: Workspace) -> Iterator[Candidate]:
             )
 
 
+def build_exchanged_ring_heteroatoms(workspace: Workspace) -> Iterator[Candidate]:
+    """Walk a ring's heteroatom while the substituents stay in their places.
+
+    N- and 4-benzylpiperidine, N- and 2-phenylpyrrole.
+    """
+    for first, second in _pairs(workspace, lone_substituents=True):
+        elements = workspace.element[first], workspace.element[second]
+        if (elements[0] == 6) == (elements[1] == 6) or not (workspace.exocyclic(first) or workspace.exocyclic(second)):
+            continue
+        walker, other = (first, second) if elements[1] == 6 else (second, first)
+        if workspace.charge[walker] or workspace.charge[other]:
+            continue
+        yield Candidate(
+            edit=partial(_exchange_elements, workspace, walker, other),
+            how=partial(_describe_exchange, workspace, walker, other),
+            key=_symmetry_key(workspace, walker, other),
+        )
+
+
 def build_azole_nitrogen_isomers(workspace: Workspace) -> Iterator[Candidate]:
-    """Move an azole's N-substituent to another nitrogen of its ring: N1/N2, 1,4/1,5-triazole, 4/5-substituted imidazole."""
+    """Move an azole's N-substituent to another nitrogen of its ring.
+
+    N1/N2 of pyrazoles, indazoles and tetrazoles, 1,4/1,5-triazoles, 4/5-substituted N-alkyl imidazoles.
+    """
     for first, second in _pairs(workspace):
         if workspace.element[first] == workspace.element[second] == 7 and workspace.aromatic[first]:
             carries = [bool(workspace.exocyclic(index)) for index in (first, second)]
@@ -80,16 +102,62 @@ def build_azole_nitrogen_isomers(workspace: Workspace) -> Iterator[Candidate]:
                     )
 
 
+def build_refused_rings(workspace: Workspace) -> Iterator[Candidate]:
+    """Fuse a ring onto the neighbouring bond of an aromatic ring.
+
+    3,4- and 2,3-methylenedioxy, anthracene and phenanthrene.
+    """
+    for kept in range(workspace.n_atoms):
+        if not _is_fusion_carbon(workspace, kept):
+            continue
+        for old in workspace.ring_neighbours[kept]:
+            if not _is_fusion_carbon(workspace, old):
+                continue
+            for new in workspace.ring_neighbours[kept]:
+                if new == old or workspace.element[new] != 6 or not workspace.hydrogens[new]:
+                    continue
+                if not workspace.aromatic[new] or not workspace.same_ring(old, new):
+                    continue
+                for end in workspace.ring_neighbours[old]:
+                    if end != kept and not workspace.same_ring(end, new):
+                        yield Candidate(
+                            edit=partial(_refuse, end, old, new),
+                            how=partial(_describe_refusion, workspace, end, old),
+                            key=(workspace.ranks[kept], workspace.ranks[end], workspace.ranks[new]),
+                        )
+
+
+def _is_fusion_carbon(workspace: Workspace, index: int) -> bool:
+    return workspace.element[index] == 6 and workspace.aromatic[index] and workspace.ring_degree[index] == 3
+
+
+def _refuse(end: int, old: int, new: int, editable: Chem.RWMol) -> None:
+    move_group(editable, end, old, new)
+
+
+def _describe_refusion(workspace: Workspace, end: int, old: int) -> str:
+    ring = min((ring for ring in workspace.rings if end in ring and old in ring), key=len)
+    hetero = sorted({workspace.element_word(index) for index in ring if workspace.element[index] != 6})
+    name = f"{len(ring)}-membered ring" + (f" with {' and '.join(hetero)}" if hetero else "")
+    return f"{name} fused onto the neighbouring bond"
+
+
 def _swap(workspace: Workspace, first: int, second: int, editable: Chem.RWMol) -> None:
     swap_ring_atoms(workspace, editable, first, second)
 
 
-def _pairs(workspace: Workspace) -> Iterator[tuple[int, int]]:
-    """Yield pairs of ring atoms with two ring bonds each, in one aromatic system or one other ring, not alike by symmetry."""
+def _pairs(workspace: Workspace, lone_substituents: bool = False) -> Iterator[tuple[int, int]]:
+    """Yield pairs of ring atoms with two ring bonds each, in one aromatic system or one other ring.
+
+    Pairs that are alike by symmetry are left out, and rings with a single marked place unless `lone_substituents`: on
+    those a swap changes nothing.
+    """
     units = list(workspace.aromatic_systems)
     units += [ring for ring in workspace.rings if not all(workspace.aromatic[index] for index in ring)]
     seen = set()
     for unit in units:
+        if not lone_substituents and not _has_two_marks(workspace, unit):
+            continue
         movable = [index for index in unit if workspace.ring_degree[index] == 2]
         for first, second in combinations(sorted(movable), 2):
             if (first, second) in seen or workspace.ranks[first] == workspace.ranks[second]:
@@ -101,6 +169,18 @@ def _pairs(workspace: Workspace) -> Iterator[tuple[int, int]]:
                     continue
             seen.add((first, second))
             yield first, second
+
+
+def _has_two_marks(workspace: Workspace, unit: tuple[int, ...]) -> bool:
+    """Tell whether more than one place of a ring is marked by an element, a substituent, a fusion or a multiple bond."""
+    marked = [
+        index
+        for index in unit
+        if workspace.element[index] != 6
+        or workspace.degree[index] != 2
+        or (not workspace.aromatic[index] and not workspace.is_sp3_carbon(index))
+    ]
+    return len(marked) > 1
 
 
 def _symmetry_key(workspace: Workspace, first: int, second: int) -> tuple[int, int, int]:
@@ -174,6 +254,26 @@ def _describe_heteroatom_walk(workspace: Workspace, walker: int, other: int) -> 
     if workspace.element[other] != 6:
         return f"{word} and {workspace.element_word(other)} of the ring swapped"
     return f"ring {word} walked {_places(distance)}"
+
+
+def _exchange_elements(workspace: Workspace, walker: int, other: int, editable: Chem.RWMol) -> None:
+    for index, model in ((walker, other), (other, walker)):
+        atom = editable.GetAtomWithIdx(index)
+        atom.SetAtomicNum(workspace.element[model])
+        # RDKit does not count hydrogens on aromatic nitrogen by itself
+        pyrrole_like = (
+            workspace.aromatic[index] and workspace.element[model] in (7, 15) and not workspace.exocyclic(index)
+        )
+        had_three = bool(workspace.exocyclic(model)) or workspace.hydrogens[model] > 0
+        atom.SetNumExplicitHs(1 if pyrrole_like and had_three else 0)
+    forget_centre(editable, walker, other)
+
+
+def _describe_exchange(workspace: Workspace, walker: int, other: int) -> str:
+    word = workspace.element_word(walker)
+    if workspace.exocyclic(walker):
+        return f"{_names(workspace, walker)} on carbon instead of the ring's {word}"
+    return f"{_names(workspace, other)} on the ring's {word} instead of carbon"
 
 
 def _describe_azole(workspace: Workspace, old: int, new: int) -> str:

@@ -1,7 +1,7 @@
-"""Isomers by turning an unsymmetrical link round: esters, amides, sulfonamides, carbamates, ethers, ketones, enones, imines.
+"""Isomers by turning an unsymmetrical link round: esters, amides, sulfonamides, carbamates, ethers, ketones, enones, …
 
-``A-l1-…-ln-B`` becomes ``B-l1-…-ln-A``. An end may be a hydrogen: an aldehyde turned gives a methyl ketone, an anisole a
-benzyl alcohol.
+``A-l1-…-ln-B`` becomes ``B-l1-…-ln-A``. An end may be a hydrogen: an aldehyde turned gives a methyl ketone, an anisole
+a benzyl alcohol.
 """
 
 from __future__ import annotations
@@ -87,6 +87,9 @@ def _turn(first: int, last: int, left: int | None, right: int | None, editable: 
 
 
 def _describe_turn(workspace: Workspace, name: str, first: int, last: int, left: int | None, right: int | None) -> str:
-    names = ["hydrogen" if left is None else workspace.group_name(first, left)]
-    names.append("hydrogen" if right is None else workspace.group_name(last, right))
-    return f"{name} turned round ({names[0]} and {names[1]} on opposite ends)"
+    if left is None:
+        return f"{name} turned round, {workspace.group_name(last, right)} on the other end"
+    if right is None:
+        return f"{name} turned round, {workspace.group_name(first, left)} on the other end"
+    names = sorted((workspace.group_name(first, left), workspace.group_name(last, right)))
+    return f"{name} turned round: {names[0]} and {names[1]} change ends"
