@@ -1,1 +1,1 @@
-"""TODO"""
+"""Cut a molecule at a site into substituents; positions; canonical names of groups."""
