@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from rdkit import Chem
 from rdkit.Chem import rdMolDescriptors
 
-from shiftpred.structures.rivals.graph_edits import is_centre, mirror
+from shiftpred.structures.rivals.graph_edits import mirror
 from shiftpred.structures.rivals.plausibility import PlausibilityFilter
 from shiftpred.structures.rivals.tautomers import compute_tautomer_key
 
@@ -15,7 +15,7 @@ from shiftpred.structures.rivals.tautomers import compute_tautomer_key
 def compute_mirror_key(mol: Chem.Mol) -> str:
     """Return a SMILES that mirror images share: NMR in an achiral solvent cannot tell them apart."""
     smiles = Chem.MolToSmiles(mol)
-    if any(is_centre(atom) for atom in mol.GetAtoms()):
+    if "@" in smiles:
         return min(smiles, Chem.MolToSmiles(mirror(mol)))
     return smiles
 
@@ -62,9 +62,12 @@ class Gate:
             return None
         if kind != "reaction" and rdMolDescriptors.CalcMolFormula(main) != self._formula:
             return None
-        whole = join_components(Chem.MolToSmiles(main), self._others)
+        unknown_share = self._plausible.compute_unknown_share(main)
+        if unknown_share is None:
+            return None
+        whole = join_components(smiles, self._others) if self._others else main
         mirror_key = compute_mirror_key(whole)
-        if mirror_key in self._taken or not self._plausible.accepts(main):
+        if mirror_key in self._taken or self._plausible.has_unlikely_group(main):
             return None
         return Examined(
             smiles=Chem.MolToSmiles(whole),
@@ -72,7 +75,7 @@ class Gate:
             mirror_key=mirror_key,
             # the key leaves configuration out, so it cannot serve between stereoisomers
             tautomer_key="" if kind == "stereoisomer" else compute_tautomer_key(main),
-            unknown_share=self._plausible.compute_unknown_share(main),
+            unknown_share=unknown_share,
         )
 
     def admit(self, rival: Examined) -> bool:

@@ -120,11 +120,9 @@ def build_walked_multiple_bonds(workspace: Workspace) -> Iterator[Candidate]:
 def build_moved_methylenes(workspace: Workspace) -> Iterator[Candidate]:
     """Take a CH2 out of one side of a functional group and put it into the other: ethyl acetate, methyl propanoate."""
     for carbon in range(workspace.n_atoms):
-        if not workspace.is_sp3_carbon(carbon) or workspace.degree[carbon] != 2 or workspace.ring_degree[carbon]:
+        if not _is_plain_methylene(workspace, carbon):
             continue
         first, second = workspace.neighbours[carbon]
-        if not (workspace.is_bridge(carbon, first) and workspace.is_bridge(carbon, second)):
-            continue
         # both sides of the group that the CH2 hangs on; a bond within four bonds of it
         for left in range(workspace.n_atoms):
             if left == carbon or workspace.distance[carbon][left] > 4:
@@ -140,6 +138,34 @@ def build_moved_methylenes(workspace: Workspace) -> Iterator[Candidate]:
                     key=(workspace.ranks[carbon], *sorted((workspace.ranks[left], workspace.ranks[right]))),
                     penalty=0.05 * workspace.distance[carbon][left],
                 )
+
+
+def build_benzyl_tolyl_isomers(workspace: Workspace) -> Iterator[Candidate]:
+    """Exchange Ar-CH2-X for CH3-Ar-X and the reverse: benzyl and tolyl."""
+    for system in workspace.aromatic_systems:
+        places = [index for index in system if workspace.element[index] == 6]
+        for ipso in places:
+            for other in workspace.exocyclic(ipso):
+                if not workspace.is_bridge(ipso, other):
+                    continue
+                if _is_plain_methylene(workspace, other):
+                    beyond = next(index for index in workspace.neighbours[other] if index != ipso)
+                    for place in places:
+                        if workspace.hydrogens[place] and workspace.distance[ipso][place] <= 3:
+                            yield Candidate(
+                                edit=partial(_benzyl_to_tolyl, ipso, other, beyond, place),
+                                how=lambda: "CH2 between ring and group taken out, methyl on the ring instead",
+                                key=("tolyl", workspace.ranks[other], workspace.ranks[place]),
+                                penalty=0.02 * (3 - workspace.distance[ipso][place]),
+                            )
+                for place in places:
+                    for methyl in workspace.exocyclic(place):
+                        if place != ipso and workspace.is_sp3_carbon(methyl) and workspace.degree[methyl] == 1:
+                            yield Candidate(
+                                edit=partial(_tolyl_to_benzyl, ipso, other, place, methyl),
+                                how=lambda: "methyl taken from the ring, CH2 between ring and group instead",
+                                key=("benzyl", workspace.ranks[other], workspace.ranks[methyl]),
+                            )
 
 
 def build_moved_methyls(workspace: Workspace) -> Iterator[Candidate]:
@@ -227,6 +253,27 @@ def _walk_bond(left: int, middle: int, right: int, bond_type: Chem.BondType, edi
     set_bond(editable, left, middle, Chem.BondType.SINGLE)
     set_bond(editable, middle, right, bond_type)
     forget_centre(editable, left, middle, right)
+
+
+def _is_plain_methylene(workspace: Workspace, index: int) -> bool:
+    """Tell whether the atom is a CH2 between two single bonds outside all rings."""
+    return (
+        workspace.is_sp3_carbon(index)
+        and workspace.degree[index] == 2
+        and all(workspace.is_bridge(index, other) for other in workspace.neighbours[index])
+    )
+
+
+def _benzyl_to_tolyl(ipso: int, methylene: int, beyond: int, place: int, editable: Chem.RWMol) -> None:
+    move_bond(editable, beyond, methylene, ipso)
+    editable.RemoveBond(ipso, methylene)
+    editable.AddBond(place, methylene, Chem.BondType.SINGLE)
+
+
+def _tolyl_to_benzyl(ipso: int, group: int, place: int, methyl: int, editable: Chem.RWMol) -> None:
+    move_bond(editable, group, ipso, methyl)
+    editable.RemoveBond(place, methyl)
+    editable.AddBond(ipso, methyl, Chem.BondType.SINGLE)
 
 
 def _move_methylene(carbon: int, first: int, second: int, left: int, right: int, editable: Chem.RWMol) -> None:

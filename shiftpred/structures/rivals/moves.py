@@ -42,6 +42,7 @@ MOVES = (
     Move(chains.build_walked_multiple_bonds, "isomer", 0.2, 0.12),
     Move(chains.build_groups_between_ring_and_chain, "isomer", 0.25, 0.12),
     Move(chains.build_moved_methylenes, "isomer", 0.25, 0.12),
+    Move(chains.build_benzyl_tolyl_isomers, "isomer", 0.25, 0.12),
     Move(chains.build_moved_methyls, "isomer", 0.3, 0.10),
     Move(stereo.build_inverted_centres, "stereoisomer", 0.2, 0.12),
     Move(stereo.build_turned_double_bonds, "stereoisomer", 0.15, 0.12),

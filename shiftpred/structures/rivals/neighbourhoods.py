@@ -75,33 +75,40 @@ def compute_neighbourhoods(mol: Chem.Mol, radius: int = 1) -> list[str]:
     >>> compute_neighbourhoods(Chem.MolFromSmiles("CCO"))[1]
     'CD2H2(-CD1H3 -OD1H1)'
     """
-    words = [
-        _token(
-            atom.GetAtomicNum(),
-            atom.GetIsAromatic(),
-            atom.GetDegree(),
-            atom.GetTotalNumHs(),
-            atom.GetFormalCharge(),
-            atom.IsInRing(),
+    words = []
+    # indexed access: iterating over mol.GetAtoms() costs three times as much, and this runs for every rival
+    for index in range(mol.GetNumAtoms()):
+        atom = mol.GetAtomWithIdx(index)
+        words.append(
+            _token(
+                atom.GetAtomicNum(),
+                atom.GetIsAromatic(),
+                atom.GetDegree(),
+                atom.GetTotalNumHs(),
+                atom.GetFormalCharge(),
+                atom.IsInRing(),
+            )
         )
-        for atom in mol.GetAtoms()
-    ]
-    bonds = [
-        (bond.GetBeginAtomIdx(), bond.GetEndAtomIdx(), _BOND_SIGNS.get(bond.GetBondType(), "~"))
-        for bond in mol.GetBonds()
-    ]
     for _ in range(radius):
-        around: list[list[str]] = [[] for _ in words]
-        for begin, end, sign in bonds:
-            around[begin].append(sign + words[end])
-            around[end].append(sign + words[begin])
-        words = [f"{word}({' '.join(sorted(neighbours))})" for word, neighbours in zip(words, around, strict=True)]
+        words = widen_neighbourhoods(mol, words)
     return words
 
 
-def compute_wide_sums(mol: Chem.Mol) -> list[int]:
-    """Return the 24-bit check sum of the radius-2 neighbourhood of every atom."""
-    return [zlib.crc32(text.encode()) >> 8 for text in compute_neighbourhoods(mol, radius=2)]
+def widen_neighbourhoods(mol: Chem.Mol, words: list[str]) -> list[str]:
+    """Return the neighbourhoods one bond wider than those given."""
+    around: list[list[str]] = [[] for _ in words]
+    for index in range(mol.GetNumBonds()):
+        bond = mol.GetBondWithIdx(index)
+        begin, end = bond.GetBeginAtomIdx(), bond.GetEndAtomIdx()
+        sign = _BOND_SIGNS.get(bond.GetBondType(), "~")
+        around[begin].append(sign + words[end])
+        around[end].append(sign + words[begin])
+    return [f"{word}({' '.join(sorted(neighbours))})" for word, neighbours in zip(words, around, strict=True)]
+
+
+def compute_check_sum(neighbourhood: str) -> int:
+    """Return the 24-bit check sum under which a radius-2 neighbourhood is kept."""
+    return zlib.crc32(neighbourhood.encode()) >> 8
 
 
 def build_neighbourhood_table(smiles: Iterable[str]) -> tuple[dict[str, int], frozenset[int], int]:
@@ -134,7 +141,7 @@ def build_neighbourhood_table(smiles: Iterable[str]) -> tuple[dict[str, int], fr
         if mol is None:
             raise StructureError(f"compound {row}", quote(text), "a valid SMILES", "leave this compound out")
         counts.update(set(compute_neighbourhoods(mol)))
-        wide_sums.update(compute_wide_sums(mol))
+        wide_sums.update(compute_check_sum(text) for text in compute_neighbourhoods(mol, radius=2))
         n_compounds += 1
     return dict(counts), frozenset(wide_sums), n_compounds
 

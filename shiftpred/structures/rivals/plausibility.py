@@ -7,10 +7,11 @@ from functools import lru_cache
 from rdkit import Chem
 
 from shiftpred.structures.rivals.neighbourhoods import (
+    compute_check_sum,
     compute_neighbourhoods,
-    compute_wide_sums,
     load_neighbourhood_table,
     load_wide_sums,
+    widen_neighbourhoods,
 )
 
 FEWEST_COMPOUNDS = 3
@@ -72,34 +73,36 @@ class PlausibilityFilter:
     """
 
     def __init__(self, proposal: Chem.Mol):
-        self._own = frozenset(compute_neighbourhoods(proposal))
-        self._own_wide = frozenset(compute_wide_sums(proposal))
+        words = compute_neighbourhoods(proposal)
+        self._own = frozenset(words)
+        self._own_wide = frozenset(widen_neighbourhoods(proposal, words))
         self._table = load_neighbourhood_table()
         self._wide_sums = load_wide_sums()
         self._unlikely = [
             (query, len(proposal.GetSubstructMatches(query, maxMatches=50))) for query in _unlikely_queries()
         ]
 
-    def accepts(self, rival: Chem.Mol) -> bool:
-        """Tell whether every neighbourhood is known (or the proposal's own) and no unlikely group is new."""
-        if not self.accepts_neighbourhoods(rival):
-            return False
+    def compute_unknown_share(self, rival: Chem.Mol) -> float | None:
+        """Return the share of atoms in a radius-2 neighbourhood that is neither known nor the proposal's own.
+
+        None: some radius-1 neighbourhood is neither known nor the proposal's own, so the rival has no place on a list.
+        """
+        words = compute_neighbourhoods(rival)
+        for word in words:
+            if word not in self._own and self._table.get(word, 0) < FEWEST_COMPOUNDS:
+                return None
+        unknown = sum(
+            wide not in self._own_wide and compute_check_sum(wide) not in self._wide_sums
+            for wide in widen_neighbourhoods(rival, words)
+        )
+        return unknown / len(words)
+
+    def has_unlikely_group(self, rival: Chem.Mol) -> bool:
+        """Tell whether a group that does not survive occurs more often than in the proposal."""
         for query, before in self._unlikely:
             if before:
                 if len(rival.GetSubstructMatches(query, maxMatches=50)) > before:
-                    return False
+                    return True
             elif rival.HasSubstructMatch(query):
-                return False
-        return True
-
-    def accepts_neighbourhoods(self, rival: Chem.Mol) -> bool:
-        """Tell whether every neighbourhood is known or the proposal's own."""
-        return all(
-            neighbourhood in self._own or self._table.get(neighbourhood, 0) >= FEWEST_COMPOUNDS
-            for neighbourhood in compute_neighbourhoods(rival)
-        )
-
-    def compute_unknown_share(self, rival: Chem.Mol) -> float:
-        """Return the share of atoms whose radius-2 neighbourhood is neither known nor the proposal's own."""
-        sums = compute_wide_sums(rival)
-        return sum(value not in self._wide_sums and value not in self._own_wide for value in sums) / len(sums)
+                return True
+        return False

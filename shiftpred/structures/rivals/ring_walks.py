@@ -172,7 +172,7 @@ def _pairs(workspace: Workspace, lone_substituents: bool = False) -> Iterator[tu
 
 
 def _has_two_marks(workspace: Workspace, unit: tuple[int, ...]) -> bool:
-    """Tell whether more than one place of a ring is marked by an element, a substituent, a fusion or a multiple bond."""
+    """Tell whether more than one place of a ring is marked: by element, substituent, fusion or multiple bond."""
     marked = [
         index
         for index in unit

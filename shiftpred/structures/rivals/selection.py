@@ -16,8 +16,9 @@ from shiftpred.structures.rivals.tautomers import build_tautomers
 from shiftpred.structures.rivals.workspace import Workspace
 
 LARGEST_LIMIT = 1000
-_MOST_STARTS = 12
-"""Rivals from which a second round starts where the first gives too few."""
+_STARTS = (3, 12)
+"""Fewest and most rivals from which a second round starts where the first gives too few; in between a fifth of the
+limit, since each start costs as much as the first round."""
 _SECOND_ROUND_POOL = 2
 """The second round collects this many times what is missing, then keeps the nearest."""
 
@@ -164,6 +165,8 @@ def _select(main: str, others: str, limit: int, mass_confirmed: bool, taken: set
     while len(rivals) < limit:
         found = queues.pop()
         if found is None:
+            fewest, most = _STARTS
+            starts = starts[: max(fewest, min(most, limit // 5))]
             return rivals + _second_round(starts, limit - len(rivals), proposal, gate)
         _, examined, move, candidate = found
         rivals.append(Rival(examined.smiles, candidate.how(), move.kind))
@@ -176,7 +179,7 @@ def _second_round(starts: list[tuple[str, str, str]], missing: int, proposal: Ch
     """Return isomers two moves away, from the nearest isomers onwards."""
     moves = [move for move in MOVES if move.kind != "reaction"]
     pool: list[tuple[float, Rival]] = []
-    for main, first_how, first_kind in starts[:_MOST_STARTS]:
+    for main, first_how, first_kind in starts:
         queues = CandidateQueues(Workspace(main), moves, proposal, gate)
         while len(pool) < _SECOND_ROUND_POOL * missing:
             found = queues.pop()
@@ -195,7 +198,7 @@ def _tautomer_rivals(main: str, others: str, limit: int, taken: set[str]) -> lis
     rivals: list[Rival] = []
     for smiles, how in build_tautomers(proposal):
         tautomer = Chem.MolFromSmiles(smiles)
-        if tautomer is None or len(rivals) >= limit or not plausible.accepts_neighbourhoods(tautomer):
+        if tautomer is None or len(rivals) >= limit or not plausible.compute_unknown_share(tautomer) is not None:
             continue
         whole = join_components(smiles, others)
         key = compute_mirror_key(whole)
