@@ -29,7 +29,8 @@ class Examined:
     main: str
     """The varied component alone."""
     mirror_key: str
-    tautomer_key: str
+    constitution_key: str
+    """Shared by stereoisomers and fast tautomers; '' for a stereoisomer of the proposal, which may share it."""
     unknown_share: float
     """Share of atoms whose environment out to two bonds is neither in the open table nor in the proposal."""
 
@@ -53,7 +54,7 @@ class Gate:
         self._taken = taken
         self._formula = rdMolDescriptors.CalcMolFormula(proposal)
         self._plausible = PlausibilityFilter(proposal)
-        self._tautomers = {compute_tautomer_key(proposal)}
+        self._constitutions = {compute_tautomer_key(proposal)}
 
     def examine(self, smiles: str, kind: str) -> Examined | None:
         """Return the rival as it would go on the list; None: it is the proposal, no isomer, or not plausible."""
@@ -73,18 +74,17 @@ class Gate:
             smiles=Chem.MolToSmiles(whole),
             main=smiles,
             mirror_key=mirror_key,
-            # the key leaves configuration out, so it cannot serve between stereoisomers
-            tautomer_key="" if kind == "stereoisomer" else compute_tautomer_key(main),
+            constitution_key="" if kind == "stereoisomer" else compute_tautomer_key(main),
             unknown_share=unknown_share,
         )
 
     def admit(self, rival: Examined) -> bool:
-        """Take the rival on the list, unless it or a fast tautomer of it is there already."""
-        if rival.mirror_key in self._taken or rival.tautomer_key in self._tautomers:
+        """Take the rival on the list, unless it is there already, also as a fast tautomer or without configuration."""
+        if rival.mirror_key in self._taken or rival.constitution_key in self._constitutions:
             return False
         self._taken.add(rival.mirror_key)
-        if rival.tautomer_key:
-            self._tautomers.add(rival.tautomer_key)
+        if rival.constitution_key:
+            self._constitutions.add(rival.constitution_key)
         return True
 
 

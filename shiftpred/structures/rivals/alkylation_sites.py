@@ -33,9 +33,7 @@ def build_lactam_lactim_alkyls(workspace: Workspace) -> Iterator[Candidate]:
 def build_moved_heteroatom_groups(workspace: Workspace) -> Iterator[Candidate]:
     """Move an alkyl or acyl group from one heteroatom to another one that has a hydrogen."""
     bearers = [
-        index
-        for index in range(workspace.n_atoms)
-        if workspace.element[index] in _BEARERS and workspace.charge[index] == 0
+        index for index in range(workspace.n_atoms) if workspace.element[index] in _BEARERS and workspace.charge[index] == 0
     ]
     for old in bearers:
         for group in workspace.neighbours[old]:
@@ -95,9 +93,7 @@ def _ether_to_amide(workspace: Workspace, carbon: int, chalcogen: int) -> Iterat
         )
 
 
-def _make_amide(
-    workspace: Workspace, carbon: int, chalcogen: int, group: int, nitrogen: int, editable: Chem.RWMol
-) -> None:
+def _make_amide(workspace: Workspace, carbon: int, chalcogen: int, group: int, nitrogen: int, editable: Chem.RWMol) -> None:
     move_bond(editable, group, chalcogen, nitrogen)
     set_bond(editable, carbon, chalcogen, Chem.BondType.DOUBLE)
     if not workspace.aromatic[carbon]:

@@ -121,6 +121,8 @@ def _build(workspace: Workspace, candidate: Candidate) -> Chem.Mol | None:
         mol = editable if edited is None else edited
         Chem.SanitizeMol(mol)
         if workspace.has_stereo:
+            # cleaning reads geometry from the directions of the neighbouring bonds only, so they are drawn afresh
+            Chem.SetDoubleBondNeighborDirections(mol)
             Chem.AssignStereochemistry(mol, cleanIt=True, force=True)
     except (ValueError, RuntimeError):
         # RDKit refuses impossible valences, aromatic rings without a Kekulé form, and bonds that exist already

@@ -36,11 +36,7 @@ def move_bond(editable: Chem.RWMol, kept: int, old: int, new: int) -> None:
     """
     atom = editable.GetAtomWithIdx(kept)
     partners = [bond.GetOtherAtomIdx(kept) for bond in atom.GetBonds()]
-    geometry = [
-        (bond.GetBeginAtomIdx(), bond.GetEndAtomIdx(), bond.GetStereo(), list(bond.GetStereoAtoms()))
-        for bond in atom.GetBonds()
-        if bond.GetStereo() in (Chem.BondStereo.STEREOCIS, Chem.BondStereo.STEREOTRANS) and old in bond.GetStereoAtoms()
-    ]
+    geometry = remember_geometry(atom)
     bond_type = editable.GetBondBetweenAtoms(kept, old).GetBondType()
     if is_centre(atom) and (len(partners) - 1 - partners.index(old)) % 2:
         invert_centre(atom)
@@ -48,10 +44,28 @@ def move_bond(editable: Chem.RWMol, kept: int, old: int, new: int) -> None:
     editable.AddBond(kept, new, bond_type)
     if bond_type == Chem.BondType.AROMATIC:
         editable.GetBondBetweenAtoms(kept, new).SetIsAromatic(True)
+    restore_geometry(editable, geometry, {old: new})
+
+
+def remember_geometry(*atoms: Chem.Atom) -> list[tuple]:
+    """Return the double bonds of these atoms whose geometry is stated, with the neighbours it refers to."""
+    return [
+        (bond.GetBeginAtomIdx(), bond.GetEndAtomIdx(), bond.GetStereo(), tuple(bond.GetStereoAtoms()))
+        for atom in atoms
+        for bond in atom.GetBonds()
+        if bond.GetStereo() in (Chem.BondStereo.STEREOCIS, Chem.BondStereo.STEREOTRANS)
+    ]
+
+
+def restore_geometry(editable: Chem.RWMol, geometry: list[tuple], replaced: dict[int, int]) -> None:
+    """State the geometry again where removing a bond erased it; replaced neighbours hand their place on."""
     for begin, end, stereo, anchors in geometry:
+        anchors = [replaced.get(anchor, anchor) for anchor in anchors]
         bond = editable.GetBondBetweenAtoms(begin, end)
-        if bond is not None and {begin, end}.isdisjoint({old, new}):
-            bond.SetStereoAtoms(*[new if anchor == old else anchor for anchor in anchors])
+        if bond is None or bond.GetBondType() != Chem.BondType.DOUBLE or {begin, end} & set(anchors):
+            continue
+        if all(editable.GetBondBetweenAtoms(*pair) for pair in zip((begin, end), anchors, strict=True)):
+            bond.SetStereoAtoms(*anchors)
             bond.SetStereo(stereo)
 
 

@@ -27,8 +27,8 @@ from shiftpred.errors import BundleError, StructureError, quote
 
 TABLE_NAME = "neighbourhood_counts.tsv.gz"
 WIDE_TABLE_NAME = "wide_neighbourhoods.bin.gz"
-"""Gaps between the sorted check sums, two bytes each, little-endian; the origin stands in the heading of the other
-table. Both in `tables/` beside this file."""
+"""Gaps between the sorted check sums, four bytes each, little-endian: first all lowest bytes, then all second ones, and so
+on, which packs better. The origin stands in the heading of the other table. Both in `tables/` beside this file."""
 
 _BOND_SIGNS = {
     Chem.BondType.SINGLE: "-",
@@ -146,15 +146,14 @@ def build_neighbourhood_table(smiles: Iterable[str]) -> tuple[dict[str, int], fr
     return dict(counts), frozenset(wide_sums), n_compounds
 
 
-def save_neighbourhood_tables(
-    folder: Path, counts: dict[str, int], wide_sums: frozenset[int], n_compounds: int
-) -> None:
+def save_neighbourhood_tables(folder: Path, counts: dict[str, int], wide_sums: frozenset[int], n_compounds: int) -> None:
     """Write both tables into a folder; the same counts always give the same bytes."""
     lines = [line.format(compounds=n_compounds) for line in _HEADING]
     lines += [f"{neighbourhood}\t{number}" for neighbourhood, number in sorted(counts.items())]
     (folder / TABLE_NAME).write_bytes(gzip.compress(("\n".join(lines) + "\n").encode(), 9, mtime=0))
     gaps = np.diff(np.array(sorted(wide_sums), dtype=np.int64), prepend=0)
-    (folder / WIDE_TABLE_NAME).write_bytes(gzip.compress(gaps.astype("<u2").tobytes(), 9, mtime=0))
+    planes = gaps.astype("<u4").view(np.uint8).reshape(-1, 4).T
+    (folder / WIDE_TABLE_NAME).write_bytes(gzip.compress(planes.tobytes(), 9, mtime=0))
 
 
 @lru_cache(maxsize=1)
@@ -192,9 +191,10 @@ def load_wide_sums() -> frozenset[int]:
     """
     source = files("shiftpred.structures.rivals") / "tables" / WIDE_TABLE_NAME
     try:
-        gaps = np.frombuffer(gzip.decompress(source.read_bytes()), dtype="<u2")
+        planes = np.frombuffer(gzip.decompress(source.read_bytes()), dtype=np.uint8).reshape(4, -1)
     except (OSError, EOFError, ValueError) as error:
         raise BundleError(
             f"table {WIDE_TABLE_NAME}", quote(str(error)), "the table as shipped", "install shiftpred again"
         ) from error
+    gaps = np.ascontiguousarray(planes.T).view("<u4").ravel()
     return frozenset(np.cumsum(gaps, dtype=np.int64).tolist())

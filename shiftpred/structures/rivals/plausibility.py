@@ -78,9 +78,7 @@ class PlausibilityFilter:
         self._own_wide = frozenset(widen_neighbourhoods(proposal, words))
         self._table = load_neighbourhood_table()
         self._wide_sums = load_wide_sums()
-        self._unlikely = [
-            (query, len(proposal.GetSubstructMatches(query, maxMatches=50))) for query in _unlikely_queries()
-        ]
+        self._unlikely = [(query, len(proposal.GetSubstructMatches(query, maxMatches=50))) for query in _unlikely_queries()]
 
     def compute_unknown_share(self, rival: Chem.Mol) -> float | None:
         """Return the share of atoms in a radius-2 neighbourhood that is neither known nor the proposal's own.

@@ -51,9 +51,7 @@ def load_reactions() -> tuple[Reaction, ...]:
     lines = [line for line in source.read_text(encoding="utf-8").splitlines() if line and not line.startswith("#")]
     rows = csv.DictReader(lines, delimiter="\t", quoting=csv.QUOTE_NONE)
     if tuple(rows.fieldnames or ()) != COLUMNS:
-        raise BundleError(
-            f"table {TABLE_NAME}", f"columns {rows.fieldnames}", f"columns {COLUMNS}", "install shiftpred again"
-        )
+        raise BundleError(f"table {TABLE_NAME}", f"columns {rows.fieldnames}", f"columns {COLUMNS}", "install shiftpred again")
     reactions = []
     for row in rows:
         try:

@@ -195,8 +195,7 @@ def _apart(workspace: Workspace, first: int, second: int) -> float:
 def _alike(workspace: Workspace, groups: list[int], others: list[int]) -> bool:
     """Tell whether both places carry the same one-atom substituents."""
     kinds = [
-        sorted((workspace.element[g], workspace.hydrogens[g], workspace.degree[g]) for g in side)
-        for side in (groups, others)
+        sorted((workspace.element[g], workspace.hydrogens[g], workspace.degree[g]) for g in side) for side in (groups, others)
     ]
     return kinds[0] == kinds[1] and all(degree == 1 for _, _, degree in kinds[0])
 
@@ -211,7 +210,11 @@ def _ring_of(workspace: Workspace, first: int, second: int) -> tuple[int, ...]:
 
 
 def _describe_walk(workspace: Workspace, old: int, new: int) -> str:
-    name = _names(workspace, old)
+    moved = sum(len(workspace.side(old, group)) for group in workspace.exocyclic(old))
+    if 2 * moved > workspace.n_atoms:
+        name, verb = "ring", "joined to the rest at another place,"
+    else:
+        name, verb = _names(workspace, old), "walked"
     ring = _ring_of(workspace, old, new)
     hetero = [index for index in ring if workspace.element[index] != 6]
     if len(ring) == 6 and not hetero and workspace.aromatic[old]:
@@ -229,18 +232,17 @@ def _describe_walk(workspace: Workspace, old: int, new: int) -> str:
             )
             places = [_BENZENE_PLACES[workspace.distance[anchor][index]] for index in (old, new)]
             if places[0] != places[1]:
-                return f"{name} walked from {places[0]} to {places[1]} of {_names(workspace, anchor)}"
+                return f"{name} {verb} from {places[0]} to {places[1]} of {_names(workspace, anchor)}"
     if hetero:
         anchor = min(hetero, key=lambda index: (abs(workspace.distance[index][old]), -workspace.element[index], index))
         before, after = workspace.distance[anchor][old], workspace.distance[anchor][new]
         if before != after:
             return (
-                f"{name} walked around the ring, from {before} to {after} {_bonds(after)} away from the ring's "
-                f"{workspace.element_word(anchor)}"
+                f"{name} {verb} from {before} to {after} {_bonds(after)} away from the ring's {workspace.element_word(anchor)}"
             )
     if not ring:
-        return f"{name} walked to another place of the fused rings, {_places(workspace.distance[old][new])} away"
-    return f"{name} walked {_places(workspace.distance[old][new])} around the ring"
+        return f"{name} {verb} {_places(workspace.distance[old][new])} away on the fused rings"
+    return f"{name} {verb} {_places(workspace.distance[old][new])} around the ring"
 
 
 def _describe_swap(workspace: Workspace, first: int, second: int) -> str:
@@ -261,9 +263,7 @@ def _exchange_elements(workspace: Workspace, walker: int, other: int, editable: 
         atom = editable.GetAtomWithIdx(index)
         atom.SetAtomicNum(workspace.element[model])
         # RDKit does not count hydrogens on aromatic nitrogen by itself
-        pyrrole_like = (
-            workspace.aromatic[index] and workspace.element[model] in (7, 15) and not workspace.exocyclic(index)
-        )
+        pyrrole_like = workspace.aromatic[index] and workspace.element[model] in (7, 15) and not workspace.exocyclic(index)
         had_three = bool(workspace.exocyclic(model)) or workspace.hydrogens[model] > 0
         atom.SetNumExplicitHs(1 if pyrrole_like and had_three else 0)
     forget_centre(editable, walker, other)

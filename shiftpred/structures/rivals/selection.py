@@ -19,6 +19,9 @@ LARGEST_LIMIT = 1000
 _STARTS = (3, 12)
 """Fewest and most rivals from which a second round starts where the first gives too few; in between a fifth of the
 limit, since each start costs as much as the first round."""
+_LARGEST_WITH_TAUTOMERS = 20
+"""Heavy atoms; up to this size the second round starts from the proposal's tautomers too (3-hydroxypyridine is a walked
+hydroxypyridine, not a walked pyridone). Enumerating them is slow for larger ones, which have rivals enough."""
 _SECOND_ROUND_POOL = 2
 """The second round collects this many times what is missing, then keeps the nearest."""
 
@@ -62,7 +65,7 @@ def build_rivals(
     StructureError
         If the structure has no atoms, or a SMILES in `expect` cannot be read.
     SettingError
-        If `limit` is not a whole number from 0 to 1000.
+        If `limit` is not a whole number from 0 to 1000, or `expect` is no list.
 
     Notes
     -----
@@ -91,6 +94,8 @@ def build_rivals(
         raise SettingError(
             "argument 'limit'", quote(limit), f"a whole number from 0 to {LARGEST_LIMIT}", "limit=9, the default"
         )
+    if isinstance(expect, str) or not isinstance(expect, Iterable):
+        raise SettingError("argument 'expect'", quote(expect), "a list of SMILES", "expect=['CCO']")
     mol = structure.mol if isinstance(structure, Structure) else structure
     if not isinstance(mol, Chem.Mol):
         raise StructureError(
@@ -116,9 +121,7 @@ def _canonical(mol: Chem.Mol) -> Chem.Mol:
         atom.SetAtomMapNum(0)
     read = Chem.MolFromSmiles(Chem.MolToSmiles(bare))
     if read is None:
-        raise StructureError(
-            "argument 'structure'", quote(Chem.MolToSmiles(bare)), "valid valences", "check charges and bonds"
-        )
+        raise StructureError("argument 'structure'", quote(Chem.MolToSmiles(bare)), "valid valences", "check charges and bonds")
     # a second round: the first parse may still follow the input where the canonical order has ties
     return Chem.MolFromSmiles(Chem.MolToSmiles(read))
 
@@ -167,6 +170,8 @@ def _select(main: str, others: str, limit: int, mass_confirmed: bool, taken: set
         if found is None:
             fewest, most = _STARTS
             starts = starts[: max(fewest, min(most, limit // 5))]
+            if proposal.GetNumAtoms() <= _LARGEST_WITH_TAUTOMERS:
+                starts = [(smiles, "", "isomer") for smiles, _ in build_tautomers(proposal)[:2]] + starts
             return rivals + _second_round(starts, limit - len(rivals), proposal, gate)
         _, examined, move, candidate = found
         rivals.append(Rival(examined.smiles, candidate.how(), move.kind))
@@ -176,7 +181,7 @@ def _select(main: str, others: str, limit: int, mass_confirmed: bool, taken: set
 
 
 def _second_round(starts: list[tuple[str, str, str]], missing: int, proposal: Chem.Mol, gate: Gate) -> list[Rival]:
-    """Return isomers two moves away, from the nearest isomers onwards."""
+    """Return isomers two moves away (or one, from a tautomer), from the nearest isomers onwards."""
     moves = [move for move in MOVES if move.kind != "reaction"]
     pool: list[tuple[float, Rival]] = []
     for main, first_how, first_kind in starts:
@@ -187,7 +192,8 @@ def _second_round(starts: list[tuple[str, str, str]], missing: int, proposal: Ch
                 break
             score, examined, move, candidate = found
             kind = "stereoisomer" if first_kind == move.kind == "stereoisomer" else "isomer"
-            pool.append((score, Rival(examined.smiles, f"{first_how}; and {candidate.how()}", kind)))
+            how = f"{first_how}; and {candidate.how()}" if first_how else candidate.how()
+            pool.append((score, Rival(examined.smiles, how, kind)))
     pool.sort(key=lambda entry: (entry[0], entry[1].smiles))
     return [rival for _, rival in pool[:missing]]
 

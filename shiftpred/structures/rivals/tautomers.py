@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from rdkit import Chem
 from rdkit.Chem import rdMolHash
-from rdkit.Chem.MolStandardize import rdMolStandardize
 
 _MOST_TAUTOMERS = 40
 _MOST_STEPS = 200
@@ -13,9 +12,11 @@ _MOST_STEPS = 200
 def compute_tautomer_key(mol: Chem.Mol) -> str:
     """Return a text that all fast tautomers of a compound share (azole N-H, lactam/lactim, amidine, keto/enol).
 
-    Configuration is left out, so the key must not be used between stereoisomers.
+    Configuration is left out, so stereoisomers share it too.
     """
-    return rdMolHash.MolHash(Chem.Mol(mol), rdMolHash.HashFunction.HetAtomTautomerv2)
+    flat = Chem.Mol(mol)
+    Chem.RemoveStereochemistry(flat)
+    return rdMolHash.MolHash(flat, rdMolHash.HashFunction.HetAtomTautomerv2)
 
 
 def build_tautomers(mol: Chem.Mol) -> list[tuple[str, str]]:
@@ -29,8 +30,12 @@ def build_tautomers(mol: Chem.Mol) -> list[tuple[str, str]]:
     Returns
     -------
     list of (str, str)
-        Canonical SMILES and plain words; the structure itself is left out.
+        Canonical SMILES and plain words; the structure itself is left out, and so are tautomers that give up an
+        aromatic ring.
     """
+    # imported here: it takes as long as all other imports of this room together, and few calls need it
+    from rdkit.Chem.MolStandardize import rdMolStandardize
+
     enumerator = rdMolStandardize.TautomerEnumerator()
     enumerator.SetMaxTautomers(_MOST_TAUTOMERS)
     enumerator.SetMaxTransforms(_MOST_STEPS)
@@ -40,9 +45,13 @@ def build_tautomers(mol: Chem.Mol) -> list[tuple[str, str]]:
     found = {}
     for tautomer in enumerator.Enumerate(mol).tautomers:
         smiles = Chem.MolToSmiles(tautomer)
-        if smiles != own:
+        if smiles != own and _count_aromatic(tautomer) >= _count_aromatic(mol):
             found[smiles] = (-rdMolStandardize.TautomerEnumerator.ScoreTautomer(tautomer), _describe(mol, tautomer))
     return [(smiles, how) for smiles, (_, how) in sorted(found.items(), key=lambda item: (item[1][0], item[0]))]
+
+
+def _count_aromatic(mol: Chem.Mol) -> int:
+    return sum(atom.GetIsAromatic() for atom in mol.GetAtoms())
 
 
 def _describe(mol: Chem.Mol, tautomer: Chem.Mol) -> str:

@@ -11,7 +11,7 @@ from functools import lru_cache, partial
 
 from rdkit import Chem
 
-from shiftpred.structures.rivals.graph_edits import forget_centre, move_bond
+from shiftpred.structures.rivals.graph_edits import forget_centre, move_bond, remember_geometry, restore_geometry
 from shiftpred.structures.rivals.workspace import Candidate, Workspace
 
 LINKS = (
@@ -31,6 +31,21 @@ LINKS = (
     ("amine", "[NX3;+0;!$(N-C=[O,S,N]);!$(N-S=O)][CX4;H2,H3]", 0, 1, 0.1),
     ("imine", "[CX3;H1]=[NX2]", 0, 1, 0.0),
 )
+_TURNED_ENDS = {
+    # what turning means where one end is a hydrogen: (link, hydrogen on the first end, hydrogen on the last end)
+    ("ester", False, True): "formate ester instead of the carboxylic acid",
+    ("ester", True, False): "carboxylic acid instead of the formate ester",
+    ("amide", False, True): "N-formyl amine instead of the carboxamide",
+    ("amide", True, False): "carboxamide instead of the N-formyl amine",
+    ("ketone", False, True): "aldehyde instead of the methyl ketone",
+    ("ketone", True, False): "methyl ketone instead of the aldehyde",
+    ("ether", False, True): "CH2-OH instead of O-CH3",
+    ("ether", True, False): "O-CH3 instead of CH2-OH",
+    ("thioether", False, True): "CH2-SH instead of S-CH3",
+    ("thioether", True, False): "S-CH3 instead of CH2-SH",
+    ("amine", False, True): "aminomethyl (CH2-N) instead of N-CH3",
+    ("amine", True, False): "N-CH3 instead of aminomethyl (CH2-N)",
+}
 
 
 def build_turned_groups(workspace: Workspace) -> Iterator[Candidate]:
@@ -69,9 +84,7 @@ def _compiled_links() -> tuple[tuple[str, Chem.Mol, int, int, float], ...]:
 def _ends(workspace: Workspace, terminal: int, inside: set[int]) -> list[int | None]:
     """Return what hangs on one end of a link: heavy atoms, and None for a hydrogen."""
     ends: list[int | None] = [
-        other
-        for other in workspace.neighbours[terminal]
-        if other not in inside and workspace.is_bridge(terminal, other)
+        other for other in workspace.neighbours[terminal] if other not in inside and workspace.is_bridge(terminal, other)
     ]
     if workspace.hydrogens[terminal]:
         ends.append(None)
@@ -79,14 +92,19 @@ def _ends(workspace: Workspace, terminal: int, inside: set[int]) -> list[int | N
 
 
 def _turn(first: int, last: int, left: int | None, right: int | None, editable: Chem.RWMol) -> None:
+    geometry = remember_geometry(editable.GetAtomWithIdx(first), editable.GetAtomWithIdx(last))
     if left is not None:
         move_bond(editable, left, first, last)
     if right is not None:
         move_bond(editable, right, last, first)
     forget_centre(editable, first, last)
+    if left is not None and right is not None:
+        restore_geometry(editable, geometry, {left: right, right: left})
 
 
 def _describe_turn(workspace: Workspace, name: str, first: int, last: int, left: int | None, right: int | None) -> str:
+    if (name, left is None, right is None) in _TURNED_ENDS:
+        return _TURNED_ENDS[name, left is None, right is None]
     if left is None:
         return f"{name} turned round, {workspace.group_name(last, right)} on the other end"
     if right is None:

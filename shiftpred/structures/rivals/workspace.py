@@ -117,9 +117,7 @@ class Workspace:
 
     def is_bridge(self, first: int, second: int) -> bool:
         """Tell whether the two atoms are joined by a single bond outside all rings."""
-        return (
-            self._bond_type.get((first, second)) == Chem.BondType.SINGLE and second not in self.ring_neighbours[first]
-        )
+        return self._bond_type.get((first, second)) == Chem.BondType.SINGLE and second not in self.ring_neighbours[first]
 
     def exocyclic(self, index: int) -> list[int]:
         """Return the neighbours that are not reached through a ring bond."""
@@ -185,3 +183,4 @@ def _anchor_double_bonds(mol: Chem.Mol) -> None:
         if bond.GetStereo() in (Chem.BondStereo.STEREOE, Chem.BondStereo.STEREOZ):
             trans = bond.GetStereo() == Chem.BondStereo.STEREOE
             bond.SetStereo(Chem.BondStereo.STEREOTRANS if trans else Chem.BondStereo.STEREOCIS)
+        bond.SetBondDir(Chem.BondDir.NONE)
