@@ -12,3 +12,11 @@ def shared() -> Path:
     if not (folder / "data" / "peaks.csv.gz").exists():
         pytest.skip("the open tables are not beside this checkout")
     return folder
+
+
+@pytest.fixture(scope="session")
+def shipped_model():
+    """The model that is shipped with the package."""
+    from shiftpred.bundles import load_default_bundle
+
+    return load_default_bundle()

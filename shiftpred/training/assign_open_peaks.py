@@ -48,6 +48,9 @@ class PeakPlacer:
         self.observed = np.nan_to_num(np.stack([compound.c13, compound.h1], axis=1))
         self.group = np.array(list(Chem.CanonicalRankAtoms(mol, breakTies=False)))
         self.possible = len(compound.c13) <= self.n_atoms
+        # Labels often follow the pen that drew the molecule: pairs of consecutive labels, and which atoms are bonded.
+        self.consecutive = np.flatnonzero(np.diff(compound.labels) == 1)
+        self.bonded = Chem.GetAdjacencyMatrix(mol).astype(bool)
 
     def compute_costs(self, predicted: np.ndarray) -> np.ndarray:
         """Return (n_sites, n_atoms) costs for `predicted` of shape (n_atoms, 2), ppm; nan: no prediction there."""
@@ -55,8 +58,12 @@ class PeakPlacer:
         difference = np.minimum(np.abs(self.observed[:, None, :] - p[None]), _CAP) / _UNIT
         return self.base + difference[:, :, 0] * self.has_c[:, None] + difference[:, :, 1] * self.has_h[:, None]
 
-    def assign(self, predicted: np.ndarray) -> np.ndarray:
-        """Return (n_sites,) the atom index of each site label, -1 where the label can go nowhere."""
+    def assign(self, predicted: np.ndarray, label_order: float = 0.0) -> np.ndarray:
+        """Return (n_sites,) the atom index of each site label, -1 where the label can go nowhere.
+
+        With `label_order`, two labels are exchanged where that costs less than the bonds between consecutive labels gained by
+        it, each worth so much; it settles what shifts alone leave open.
+        """
         out = np.full(len(self.observed), -1)
         if not self.possible:
             return out
@@ -64,6 +71,42 @@ class PeakPlacer:
         rows, columns = linear_sum_assignment(cost)
         good = cost[rows, columns] < _FORBIDDEN / 2
         out[rows[good]] = columns[good]
+        return self._follow_labels(out, cost, label_order) if label_order else out
+
+    def _follow_labels(self, out, cost, label_order):
+        """Exchange pairs of labels while cost minus the worth of bonds between consecutive labels falls."""
+        placed = np.flatnonzero(out >= 0)
+        if len(placed) < 2 or not len(self.consecutive):
+            return out
+        after = np.zeros(len(out), dtype=bool)
+        after[self.consecutive] = True
+
+        def bonds_at(k):
+            total = 0
+            if after[k] and out[k] >= 0 and out[k + 1] >= 0:
+                total += self.bonded[out[k], out[k + 1]]
+            if k and after[k - 1] and out[k] >= 0 and out[k - 1] >= 0:
+                total += self.bonded[out[k - 1], out[k]]
+            return total
+
+        for _ in range(3):
+            here = cost[placed][:, out[placed]]
+            own = np.diag(here)
+            change = here + here.T - own[:, None] - own
+            first, second = np.nonzero(np.triu(change < 3 * label_order, 1))
+            swapped = False
+            for p, q in sorted(zip(first, second), key=lambda pair: change[pair]):
+                k, m = placed[p], placed[q]
+                if self.group[out[k]] == self.group[out[m]]:
+                    continue
+                now = cost[k, out[k]] + cost[m, out[m]] - label_order * (bonds_at(k) + bonds_at(m))
+                out[k], out[m] = out[m], out[k]
+                if cost[k, out[k]] + cost[m, out[m]] - label_order * (bonds_at(k) + bonds_at(m)) < now - 1e-9:
+                    swapped = True
+                else:
+                    out[k], out[m] = out[m], out[k]
+            if not swapped:
+                break
         return out
 
     def assign_unambiguous(self) -> np.ndarray:

@@ -13,30 +13,40 @@ from sklearn.linear_model import Ridge
 from sklearn.utils.validation import _check_sample_weight, check_is_fitted, validate_data
 
 from shiftpred.errors import InputError
-from shiftpred.features.site_rows import CONSTANT_LEVEL, CONSTANTS, compute_regressors, select_places
+from shiftpred.features.site_rows import CONSTANT_LEVEL, CONSTANTS, compute_regressors, compute_counted_places
 from shiftpred.records import NUCLEI
 from shiftpred.regression.substituent_model import (
-    ALPHA_PENALTIES,
     BASE_PENALTIES,
-    FAR_PENALTIES,
     SOLVENT_PENALTY,
     NucleusTable,
     SubstituentModel,
     compute_base_terms,
     compute_place_terms,
     compute_solvent_term,
+    compute_place_penalties,
 )
 from shiftpred.substituents.group_codes import compute_group_codes
 from shiftpred.substituents.positions import POSITIONS
+from shiftpred.training.assign_open_peaks import PeakPlacer
+from shiftpred.training.open_tables import Compound
 
-__all__ = ["ShrunkenRidge", "SubstituentDesign", "build_substituent_design", "fit_substituent_model"]
+__all__ = [
+    "ShrunkenRidge",
+    "SubstituentDesign",
+    "build_substituent_design",
+    "compute_pull",
+    "fit_substituent_model",
+    "fit_to_peak_lists",
+]
 
-ALPHA = {"13C": 3.0, "1H": 4.0}
+ALPHA = {"13C": 1.5, "1H": 3.0}
 """Ridge strength; found on the calibration split of the open tables."""
 OUTLIER_PPM = {"13C": 3.0, "1H": 0.3}
 """Residuals beyond this pull linearly, not quadratically (Huber 1964, doi 10.1214/aoms/1177703732)."""
 LEAST_SEEN = (2, 4)
 """Sites on which a term must have been seen: general terms (penalty below 2), special ones."""
+CONSTANT_SCALE = 2.0
+"""Weight of the constants against the increments before shrinkage: they explain first, increments what is left."""
 NEGLIGIBLE_PPM = {"13C": 0.02, "1H": 0.002}
 """Increments smaller than this are left out of the finished model."""
 
@@ -231,10 +241,9 @@ def build_substituent_design(
             fine, coarse, base = compute_base_terms(codes, i)
             entries = [number(t, p) for t, p in zip(base, BASE_PENALTIES, strict=True)]
             sums = np.zeros((len(POSITIONS), len(CONSTANTS)))
-            for place in select_places(codes, i):
-                these = ALPHA_PENALTIES if place.distance == 1 else FAR_PENALTIES
+            for place in compute_counted_places(codes, i):
                 terms = compute_place_terms(codes, fine, coarse, place)
-                entries += [number(t, p) for t, p in zip(terms, these, strict=True)]
+                entries += [number(t, p) for t, p in zip(terms, compute_place_penalties(place), strict=True)]
                 code = codes.levels[CONSTANT_LEVEL][place.parent][place.atom]
                 sums[position_number[place.position]] += compute_regressors(code)
             if solvent:
@@ -266,9 +275,7 @@ def build_substituent_design(
         shape=(len(columns), offset + len(numbers)),
     )
     rows.sum_duplicates()
-    return SubstituentDesign(
-        rows, site_rows, is_carbon, bears_hydrogen, tuple(classes), tuple(numbers), np.array(penalties)
-    )
+    return SubstituentDesign(rows, site_rows, is_carbon, bears_hydrogen, tuple(classes), tuple(numbers), np.array(penalties))
 
 
 def fit_substituent_model(
@@ -321,6 +328,48 @@ def fit_substituent_model(
     return SubstituentModel(tables, {"sites": counts, "molecules": len(mols), "alpha": dict(alpha or ALPHA)})
 
 
+def fit_to_peak_lists(
+    compounds: Sequence[Compound], n_rounds: int = 4, log: Callable[[str], None] | None = None
+) -> tuple[SubstituentModel, list[np.ndarray]]:
+    """Fit the substituent model to peak lists without atom numbers: fit, predict, assign, and again.
+
+    The first fit uses the peaks whose hydrogen count leaves only one kind of atom.
+
+    Parameters
+    ----------
+    compounds : sequence of Compound
+        From `load_open_tables`; those with more site labels than atoms are left out.
+    n_rounds : int, default 4
+        Fits; between two of them every compound's peaks are assigned anew.
+    log : callable or None, default None
+        Gets one line a round.
+
+    Returns
+    -------
+    SubstituentModel
+    list of ndarray of shape (n_atoms, 2)
+        The last assignment [13C, 1H] of each compound; all nan for one that was left out.
+    """
+    placers = [PeakPlacer(compound) for compound in compounds]
+    mols = [compound.mol for compound in compounds]
+    values = [np.stack((compound.c13, compound.h1), axis=1) for compound in compounds]
+    design = build_substituent_design(mols)
+    targets = [p.place(v, p.assign_unambiguous()) for p, v in zip(placers, values, strict=True)]
+    for number in range(1, n_rounds + 1):
+        model = fit_substituent_model(mols, targets, design=design)
+        predicted = design.predict(model)
+        targets = [p.place(v, p.assign(y)) for p, v, y in zip(placers, values, predicted, strict=True)]
+        if log:
+            error = np.abs(np.concatenate(targets) - np.concatenate(predicted))
+            n_placed = (~np.isnan(error)).sum(axis=0)
+            mean = np.nanmean(error, axis=0)
+            log(
+                f"substituent model, round {number} of {n_rounds}: {n_placed[0]} carbons at {mean[0]:.2f} ppm, "
+                f"{n_placed[1]} hydrogen-bearing atoms at {mean[1]:.3f} ppm (training, mean absolute)"
+            )
+    return model, targets
+
+
 def _fit_table(design, nucleus, index, y, weight, alpha) -> NucleusTable:
     n_constants = design.n_constant_columns
     if not len(y):
@@ -354,10 +403,6 @@ def _fit_table(design, nucleus, index, y, weight, alpha) -> NucleusTable:
     values = beta[n_constants:][used].astype(np.float32).astype(float)
     increments = dict(zip((design.terms[k] for k in used), values.tolist(), strict=True))
     return NucleusTable(ridge.intercept_, increments, design.classes, coefficients)
-
-
-CONSTANT_SCALE = 2.0
-"""Weight of the constants against the increments before shrinkage: they explain first, increments what is left."""
 
 
 def _require_matching(mols, targets) -> None:

@@ -8,9 +8,9 @@ from torch import nn
 
 from shiftpred.features.molecule_arrays import ATOM_FEATURES, BOND_FEATURES
 from shiftpred.features.solvents import SOLVENTS
-from shiftpred.regression.environment_model import OUTPUT_CENTRE, OUTPUT_UNIT, SOLVENT_RANK
+from shiftpred.regression.environment_model import SOLVENT_RANK
 
-__all__ = ["EnvironmentNetwork", "export_arrays"]
+__all__ = ["EnvironmentNetwork", "build_state", "export_arrays"]
 
 
 class MessageLayer(nn.Module):
@@ -99,3 +99,14 @@ def export_arrays(network: EnvironmentNetwork) -> dict[str, np.ndarray]:
     out["solvent_out"][0] = 0.0
     return out
 
+
+
+def build_state(arrays: dict[str, np.ndarray]) -> dict[str, torch.Tensor]:
+    """Return the torch state of a network from the arrays of a bundle: the inverse of `export_arrays`."""
+    state = {}
+    for name, value in arrays.items():
+        if name.endswith(".weight") and value.ndim == 2:
+            value = value.T
+        state[name] = torch.from_numpy(np.ascontiguousarray(value, dtype=np.float32))
+    state["known"] = (torch.arange(len(SOLVENTS)) > 0).float()[:, None, None]
+    return state

@@ -27,7 +27,7 @@ from shiftpred.training.assign_open_peaks import PeakPlacer
 from shiftpred.training.network import EnvironmentNetwork
 from shiftpred.training.open_tables import Compound
 
-__all__ = ["NetworkSettings", "build_graphs", "build_network", "compute_errors", "predict_compounds",
+__all__ = ["NetworkSettings", "build_graphs", "build_network", "compute_errors", "is_strange", "predict_compounds",
            "train_environment_model"]
 
 
@@ -47,6 +47,10 @@ class NetworkSettings:
     weight_decay: float = 1e-3
     averaging: float = 0.9985
     random_seed: int = 7
+    label_order: float = 0.3
+    """Worth of a bond between consecutive labels when peaks are assigned (see `PeakPlacer.assign`), from the middle on."""
+    cleaning: bool = True
+    """From the middle on, compounds that fit far worse than the rest are not learned from."""
     electronic: bool = True
     stereo: bool = True
     low_precision: bool = True
@@ -171,9 +175,9 @@ def _work(rank: int, job: _Job) -> None:
     placers = [PeakPlacer(c) for c in job.compounds]
     train = [i for i, c in enumerate(job.compounds) if c.split == "train"]
     watch = [i for i, c in enumerate(job.compounds) if c.split == "calibration"]
-    samples = np.array([(i, s) for i in train for s in range(len(job.compounds[i].samples))], dtype=np.int64)
-    steps = math.ceil(len(samples) / settings.batch)
+    all_samples = samples = np.array([(i, s) for i in train for s in range(len(job.compounds[i].samples))], dtype=np.int64)
     assignments: list[np.ndarray] | None = None
+    middle = (settings.passes - settings.first_passes) // 2 if job.starting_weights is None else 1
     for number in range(first, settings.passes):
         begun = time.time()
         start = number < settings.first_passes and job.starting_weights is None
@@ -182,12 +186,18 @@ def _work(rank: int, job: _Job) -> None:
             fresh = [p.assign_unambiguous() for p in placers]
         else:
             model = network if number <= settings.first_passes else average
-            fresh, errors = _assign_all(model, job, placers, watch, rank, f"pass {number + 1}: assign")
+            late = number >= middle
+            fresh, strange, errors = _assign_all(
+                model, job, placers, watch, rank, settings.label_order if late else 0.0, f"pass {number + 1}: assign"
+            )
+            if late and settings.cleaning:
+                samples = all_samples[~strange[all_samples[:, 0]]]
         changed = math.nan
         if assignments is not None:
             changed = np.mean(np.concatenate([a != b for a, b in zip(fresh, assignments)]))
         assignments = fresh
         order = np.random.default_rng(settings.random_seed + number).permutation(samples)
+        steps = math.ceil(len(order) / settings.batch)
         network.train()
         total = 0.0
         bar = _progress(range(steps), f"pass {number + 1}/{settings.passes}: fit", rank == 0)
@@ -238,21 +248,43 @@ def _progress(items, what, wanted=True):
     return tqdm(items, desc=what, leave=False, disable=not (wanted and sys.stderr.isatty()))
 
 
-def _assign_all(model, job, placers, watch, rank, what):
-    """Predict and assign this process' share of the compounds; bring the shares of all processes together."""
+def _assign_all(model, job, placers, watch, rank, label_order, what):
+    """Predict and assign this process' share of the compounds; bring the shares of all processes together.
+
+    Returns the assignments, which compounds fit strangely badly, and the errors of the watched ones (of this share).
+    """
     n = len(placers)
     mine = list(range(rank, n, job.processes))
     predicted = dict(zip(mine, predict_compounds(model, [job.graphs[i] for i in mine], job.settings, progress=what)))
     sizes = np.array([len(c.c13) for c in job.compounds])
     offsets = np.concatenate([[0], np.cumsum(sizes)])
-    flat = torch.zeros(offsets[-1], dtype=torch.int32)
+    flat = torch.zeros(offsets[-1] + n, dtype=torch.int32)
+    watched = set(watch)
     for i in mine:
-        flat[offsets[i] : offsets[i + 1]] = torch.from_numpy(placers[i].assign(predicted[i][:, :2]).astype(np.int32))
+        # What is watched is scored by shifts alone, as others score it.
+        assignment = placers[i].assign(predicted[i][:, :2], 0.0 if i in watched else label_order)
+        flat[offsets[i] : offsets[i + 1]] = torch.from_numpy(assignment.astype(np.int32))
+        flat[offsets[-1] + i] = int(is_strange(job.compounds[i], assignment, predicted[i]))
     if job.processes > 1:
         distributed.all_reduce(flat)
-    fresh = np.split(flat.numpy().astype(np.int64), offsets[1:-1])
+    values = flat.numpy().astype(np.int64)
+    fresh, strange = np.split(values[: offsets[-1]], offsets[1:-1]), values[offsets[-1] :] > 0
     cases = [(placers[i], job.compounds[i], fresh[i], predicted[i]) for i in watch if i in predicted]
-    return fresh, compute_errors(cases) if cases else {}
+    return fresh, strange, compute_errors(cases) if cases else {}
+
+
+def is_strange(compound: Compound, assignment: np.ndarray, predicted: np.ndarray) -> bool:
+    """Say whether peaks fit so badly that spectrum or structure is probably wrong: on average beyond four times the error
+    that is expected there, and beyond 6 ppm (13C) or 0.8 ppm (1H)."""
+    used = assignment >= 0
+    for column, (observed, worst) in enumerate(((compound.c13, 6.0), (compound.h1, 0.8))):
+        error = np.abs(observed[used] - predicted[assignment[used], column])
+        known = ~np.isnan(error)
+        if known.any():
+            expected = predicted[assignment[used], 3 + column][known]
+            if error[known].mean() > worst and (error[known] / expected).mean() > 4:
+                return True
+    return False
 
 
 def _batch_loss(network, mine, job, placers, assignments):

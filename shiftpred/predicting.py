@@ -1,0 +1,145 @@
+"""From structures to predicted nuclei: arrays, network, solvent, intervals; in batches, so that memory stays flat."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+from itertools import islice
+
+import numpy as np
+
+from shiftpred.bundles import ModelBundle
+from shiftpred.calibration.intervals import require_coverage
+from shiftpred.calibration.novelty import NEW_NEIGHBOURS, NEW_SURROUNDINGS, compute_surroundings_codes
+from shiftpred.errors import SettingError, quote
+from shiftpred.features.molecule_arrays import build_molecule_arrays, join_molecule_arrays
+from shiftpred.features.solvents import SOLVENTS
+from shiftpred.records import MoleculePrediction, NucleusPrediction, Structure
+from shiftpred.structures.environments import compute_environments
+from shiftpred.structures.sites import compute_sites
+
+__all__ = ["predict_molecules", "require_nucleus"]
+
+_BATCH = 64
+_NOVELTY_NOTE = {
+    NEW_SURROUNDINGS: "surroundings not in the training data",
+    NEW_NEIGHBOURS: "unlike the training data",
+}
+_NUCLEUS_CHOICES = {"13C": ("13C",), "1H": ("1H",), "both": ("13C", "1H")}
+
+
+def require_nucleus(nucleus: str) -> tuple[str, ...]:
+    """Return the nuclei that `nucleus` ('13C', '1H' or 'both') names.
+
+    Raises
+    ------
+    SettingError
+        For anything else.
+    """
+    if nucleus not in _NUCLEUS_CHOICES:
+        raise SettingError("nucleus", quote(nucleus), "'13C', '1H' or 'both'", "nucleus='both'")
+    return _NUCLEUS_CHOICES[nucleus]
+
+
+def predict_molecules(
+    structures: Iterable[Structure],
+    bundle: ModelBundle,
+    nucleus: str = "both",
+    solvent: str | None = None,
+    coverage: float = 0.9,
+) -> Iterator[MoleculePrediction]:
+    """Predict every nucleus of every structure, in order, batch by batch.
+
+    Parameters
+    ----------
+    structures : iterable of Structure
+    bundle : ModelBundle
+    nucleus : {'13C', '1H', 'both'}
+    solvent : str, optional
+        Short name as `shiftpred.peaks.solvents.normalise_solvent` gives it; None: not reported.
+    coverage : float
+        How often the interval is meant to hold the observed value.
+
+    Yields
+    ------
+    MoleculePrediction
+    """
+    nuclei, coverage = require_nucleus(nucleus), require_coverage(coverage)
+    known = solvent if solvent in SOLVENTS else "other" if solvent else ""
+    source = iter(structures)
+    while batch := list(islice(source, _BATCH)):
+        yield from _predict_batch(batch, bundle, nuclei, known, solvent, coverage)
+
+
+def _predict_batch(batch, bundle, nuclei, known_solvent, solvent, coverage):
+    graph, offsets = join_molecule_arrays([build_molecule_arrays(s.mol) for s in batch])
+    values, scales, inner = bundle.environment_model.predict_raw(graph)
+    if known_solvent:
+        values[:, :2] += bundle.environment_model.predict_solvent_effect(inner, SOLVENTS.index(known_solvent))
+    levels = bundle.novelty.compute_levels(compute_surroundings_codes(graph))
+    # One answer on every machine and for every batch size: float32 sums differ in their last digits, four decimals do not.
+    values, scales = values.astype(float), scales.astype(float)
+    for structure, begin, end in zip(batch, offsets[:-1], offsets[1:]):
+        yield _build_prediction(
+            structure, bundle, nuclei, solvent, coverage, values[begin:end], scales[begin:end], levels[begin:end]
+        )
+
+
+def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scales, levels):
+    sites = compute_sites(structure)
+    rows: list[NucleusPrediction] = []
+    for column, nucleus in enumerate(("13C", "1H")):
+        if nucleus not in nuclei:
+            continue
+        environments = compute_environments(structure.mol, nucleus)
+        shared = _average_over_equivalent(sites, values[:, column], scales[:, column])
+        for site, environment in zip(sites, environments):
+            if (site.element != "C") if nucleus == "13C" else (site.attached_h == 0):
+                continue
+            i = site.atom_index
+            shift, scale = shared[i]
+            level = int(levels[i])
+            scale *= bundle.intervals.compute_novelty_factor(nucleus, level)
+            half = scale * bundle.intervals.compute_factor(nucleus, environment, coverage)
+            t_scale, degrees = bundle.intervals.compute_student(nucleus, environment)
+            note = _build_note(site, nucleus, level)
+            equivalent = tuple(structure.atom_numbers[j] for j in site.equivalent)
+            if nucleus == "1H" and site.geminal_differ:
+                gap = float(values[i, 2])
+                placed = (("a", shift + gap), ("b", shift - gap))
+            else:
+                placed = (("", shift),)
+            for hydrogen, ppm in placed:
+                ppm = round(ppm, 3)
+                rows.append(
+                    NucleusPrediction(
+                        nucleus, i, site.atom, hydrogen, site.attached_h, equivalent, ppm, round(ppm - half, 3),
+                        round(ppm + half, 3), coverage, scale * t_scale, degrees, environment,
+                        nucleus == "1H" and site.labile, note,
+                    )
+                )
+    return MoleculePrediction(structure, sites, tuple(rows), solvent, bundle.edition, structure.notes)
+
+
+def _average_over_equivalent(sites, values, scales):
+    """Return (shift, scale) by atom index; equivalent sites share one value to the last digit."""
+    shared: dict[int, tuple[float, float]] = {}
+    for site in sites:
+        if site.atom_index not in shared:
+            members = list(site.equivalent)
+            both = (float(np.mean(values[members])), float(np.mean(scales[members])))
+            for j in members:
+                shared[j] = both
+    return shared
+
+
+def _build_note(site, nucleus, level):
+    parts = []
+    if level in _NOVELTY_NOTE:
+        parts.append(_NOVELTY_NOTE[level])
+    if nucleus == "1H" and site.labile:
+        parts.append("exchangeable: anywhere, broad or absent")
+    if site.deuterium:
+        parts.append("carries deuterium")
+    if site.diastereotopic and not site.geminal_differ:
+        parts.append("diastereotopic or slow to exchange with an equal group: may give a line of its own")
+    return "; ".join(parts)
