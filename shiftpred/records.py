@@ -311,6 +311,45 @@ class Comparison:
 
 
 @dataclass(frozen=True)
+class RankedCandidate:
+    """One structure of a list of candidates, judged against the same peaks as the others."""
+
+    candidate: int
+    """0-based position in the list as given."""
+    structure: Structure
+    probability: float
+    """That this one is in the tube; with `Ranking.none_of_these` all candidates add up to 1."""
+    misfit: float
+    """How badly the peaks fit: minus the log likelihood, smaller is better; differences mean something, sizes do not."""
+    assignments: tuple[Assignment, ...] = ()
+    unexplained: tuple[Unexplained, ...] = ()
+    missing: tuple[Missing, ...] = ()
+    decided_by: str = ""
+    """Lines or experiment that would tell it from the first one; '' for the first."""
+    note: str = ""
+
+
+@dataclass(frozen=True)
+class Ranking:
+    """A list of candidates, best first."""
+
+    candidates: tuple[RankedCandidate, ...]
+    none_of_these: float
+    """Probability that the right structure is not in the list."""
+    settings: Settings
+    model: str
+    """Edition of the model bundle."""
+    reasons: tuple[str, ...] = ()
+    cautions: tuple[str, ...] = ()
+    peaks: dict[str, PeakList] = field(default_factory=dict)
+    input_hash: str = ""
+    """SHA-256 of structure texts and peak texts."""
+    steps: tuple[str, ...] = ()
+    failures: tuple[RecordFailure, ...] = ()
+    """Candidates that could not be read; their positions count all the same."""
+
+
+@dataclass(frozen=True)
 class Contribution:
     """One line of an explanation."""
 
