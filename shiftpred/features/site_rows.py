@@ -33,8 +33,8 @@ __all__ = [
     "compute_site_class",
     "compute_site_row",
     "compute_site_rows",
-    "describe_site_class",
-    "select_places",
+    "render_site_class",
+    "compute_counted_places",
 ]
 
 CONSTANTS = (
@@ -123,7 +123,7 @@ def compute_site_class(codes: GroupCodes, atom_index: int) -> tuple[str, str]:
     return f"{coarse}H{codes.hydrogens[atom_index]}{_RING.get(codes.rings[atom_index], 'r8')}{fused}", coarse
 
 
-def describe_site_class(codes: GroupCodes, atom_index: int) -> str:
+def render_site_class(codes: GroupCodes, atom_index: int) -> str:
     """Return the class of a site in words: 'sp3 CH2 in a ring of 5', 'aromatic CH'."""
     symbol, hydrogens = codes.atoms[atom_index], codes.hydrogens[atom_index]
     element = symbol.rstrip("+-")
@@ -171,7 +171,7 @@ def compute_regressors(code: str) -> tuple[float, ...]:
     return tuple(0.0 if isnan(v) else v for v in shifted)
 
 
-def select_places(codes: GroupCodes, atom_index: int, ranks: Sequence[int] | None = None) -> list[Place]:
+def compute_counted_places(codes: GroupCodes, atom_index: int, ranks: Sequence[int] | None = None) -> list[Place]:
     """List the substituents that count: alpha, beta, gamma, ortho, meta, para (see `compute_places`)."""
     reach = REACH if codes.six_rings[atom_index] else REACH - 1
     return [p for p in compute_places(codes, atom_index, reach, ranks) if p.distance < REACH or p.position == "para"]
@@ -211,7 +211,7 @@ def compute_site_row(mol: Chem.Mol, atom_index: int, codes: GroupCodes | None = 
         codes.rings[atom_index],
     )
     width = len(CONSTANTS) + 2
-    for place in select_places(codes, atom_index):
+    for place in compute_counted_places(codes, atom_index):
         code = codes.levels[CONSTANT_LEVEL][place.parent][place.atom]
         start = len(SITE_FEATURES) + POSITIONS.index(place.position) * width
         values[start] += 1

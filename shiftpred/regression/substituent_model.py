@@ -25,15 +25,16 @@ from shiftpred.features.site_rows import (
     CONSTANT_LEVEL,
     CONSTANTS,
     compute_constants,
+    compute_counted_places,
     compute_regressors,
     compute_site_class,
-    describe_site_class,
-    select_places,
+    render_site_class,
 )
 from shiftpred.records import NUCLEI
 from shiftpred.substituents.group_codes import GroupCodes, compute_group_codes
+from shiftpred.substituents.group_smiles import build_bare_molecule
 from shiftpred.substituents.positions import POSITIONS, Place
-from shiftpred.substituents.split import split_substituents
+from shiftpred.substituents.split import compute_ranks_from, split_substituents
 
 __all__ = [
     "NucleusTable",
@@ -47,12 +48,15 @@ __all__ = [
 FORMAT = 1
 """Number of the array format that `to_arrays` writes."""
 
-BASE_PENALTIES = (0.0, 0.0, 2.0)
-"""Shrinkage of coarse class, fine class and the alpha atoms taken together, in halvings of the squared scale."""
-ALPHA_PENALTIES = (0.0, 1.0, 2.0, 3.0, 1.0, 2.0, 3.0, 4.0)
-"""Levels 0 to 3 for the coarse class, then for the fine class."""
-FAR_PENALTIES = (0.0, 1.0)
-"""Levels 0 and 1 for the coarse class, at all further positions."""
+BASE_PENALTIES = (0.0, 0.0, 1.0, 3.0)
+"""Shrinkage of coarse class, fine class and the alpha atoms taken together (their elements; then with what they carry),
+in halvings of the squared scale."""
+PLACE_PENALTIES = {
+    "alpha": (0.0, 1.0, 2.0, 3.0, 1.0, 2.0, 3.0, 4.0),
+    "beta": (0.0, 1.0, 1.0, 2.0),
+    "far": (0.0, 1.0),
+}
+"""Likewise for a substituent: levels 0 to 3 at alpha, 0 and 1 further out; coarse class first, then the fine one."""
 SOLVENT_PENALTY = 1.0
 
 ZERO_SHIFT = {"13C": {"C3": -2.3, "C2": 123.3}, "1H": {"C3": 0.23, "C2": 5.25}}
@@ -105,19 +109,33 @@ class NucleusTable:
 def compute_base_terms(codes: GroupCodes, atom_index: int) -> tuple[str, str, list[str]]:
     """Return fine class, coarse class and the base terms of a site (in the order of `BASE_PENALTIES`)."""
     fine, coarse = compute_site_class(codes, atom_index)
-    together = "".join(sorted(codes.levels[0][atom_index].values()))
-    return fine, coarse, [coarse, fine, f"{fine}&{together}"]
+    elements = "".join(sorted(codes.levels[0][atom_index].values()))
+    carrying = "".join(sorted(codes.levels[1][atom_index].values()))
+    return fine, coarse, [coarse, fine, f"{fine}&{elements}", f"{fine}&&{carrying}"]
 
 
 def compute_place_terms(codes: GroupCodes, fine: str, coarse: str, place: Place) -> list[str]:
-    """Return the increment terms of one substituent (in the order of `ALPHA_PENALTIES` or `FAR_PENALTIES`)."""
+    """Return the increment terms of one substituent (in the order of its `PLACE_PENALTIES`)."""
     parent, atom = place.parent, place.atom
     levels = codes.levels
     if place.distance == 1:
         groups = [levels[0][parent][atom], levels[1][parent][atom], levels[2][parent][atom], levels[3][parent][atom]]
         return [f"{coarse}|alpha|{group}" for group in groups] + [f"{fine}|alpha|{group}" for group in groups]
-    start = f"{coarse}|{place.position}{place.path}|"
-    return [start + levels[0][parent][atom], start + levels[1][parent][atom]]
+    tail = f"|{place.position}{place.path}|"
+    general, special = tail + levels[0][parent][atom], tail + levels[1][parent][atom]
+    if place.distance == 2:
+        return [coarse + general, coarse + special, fine + general, fine + special]
+    return [coarse + general, coarse + special]
+
+
+def compute_place_penalties(place: Place) -> tuple[float, ...]:
+    """Return the penalties of a substituent's terms."""
+    return PLACE_PENALTIES[{1: "alpha", 2: "beta"}.get(place.distance, "far")]
+
+
+def compute_solvent_term(coarse: str, solvent: str) -> str:
+    """Return the term of a solvent for a class of sites."""
+    return f"{coarse}~{solvent}"
 
 
 class SubstituentModel:
@@ -175,7 +193,7 @@ class SubstituentModel:
             for term in base:
                 total += increment(term, 0.0)
             number = numbers.get(coarse, -1)
-            for place in select_places(codes, i):
+            for place in compute_counted_places(codes, i):
                 for term in compute_place_terms(codes, fine, coarse, place):
                     total += increment(term, 0.0)
                 if number >= 0:
@@ -218,13 +236,13 @@ class SubstituentModel:
         fine, coarse, base = compute_base_terms(codes, atom_index)
         increment = table.increments.get
         base_ppm, offsets = self._choose_zero(codes, atom_index, nucleus, fine, coarse)
-        parts = [Part(f"base: {describe_site_class(codes, atom_index)}", "base", "", "", (), {}, base_ppm)]
-        together = increment(base[2], 0.0)
+        parts = [Part(f"base: {render_site_class(codes, atom_index)}", "base", "", "", (), {}, base_ppm)]
+        together = increment(base[2], 0.0) + increment(base[3], 0.0)
         if together:
             names = ", ".join(sorted(codes.atoms[v].capitalize() for v in codes.neighbours[atom_index]))
             parts.append(Part(f"base: {names} on one atom", "base", "", "", (), {}, together))
-        ranks = list(Chem.CanonicalRankAtoms(mol))
-        places = {place.atom: place for place in select_places(codes, atom_index, ranks)}
+        ranks = compute_ranks_from(build_bare_molecule(mol), atom_index)
+        places = {place.atom: place for place in compute_counted_places(codes, atom_index, ranks)}
         for group in split_substituents(mol, atom_index, codes):
             place = places[group.attached_atom]
             ppm = self._compute_contribution(codes, nucleus, fine, coarse, place)
@@ -270,7 +288,7 @@ class SubstituentModel:
         marks = [code[0] for code in codes.levels[0][atom_index].values()]
         for mark in set(marks) & set(_REFERENCE):
             reference = compute_group_codes(Chem.MolFromSmiles(_REFERENCE[mark]))
-            (place,) = [p for p in select_places(reference, 0) if p.atom == 1]
+            (place,) = [p for p in compute_counted_places(reference, 0) if p.atom == 1]
             offsets[mark] = self._compute_contribution(reference, nucleus, fine, coarse, place)
         base = base_of(fine, marks)
         singles = sum(mark in "-_" for mark in marks)
@@ -370,7 +388,3 @@ def _has_nucleus(codes: GroupCodes, atom_index: int, nucleus: str) -> bool:
     if nucleus == "1H":
         return codes.hydrogens[atom_index] > 0
     return codes.atoms[atom_index].rstrip("+-") in ("C", "c")
-
-
-def compute_solvent_term(coarse: str, solvent: str) -> str:
-    return f"{coarse}~{solvent}"

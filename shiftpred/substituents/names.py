@@ -182,9 +182,7 @@ def _name_aryl(mol: Chem.Mol, dummy: Chem.Atom, root: Chem.Atom) -> str:
         order, last = [root, start], root
         while len(order) < 6:
             last = order[-2]
-            order.append(
-                next(a for a in order[-1].GetNeighbors() if a.GetIdx() in ring and a.GetIdx() != last.GetIdx())
-            )
+            order.append(next(a for a in order[-1].GetNeighbors() if a.GetIdx() in ring and a.GetIdx() != last.GetIdx()))
         found = []
         for number, atom in enumerate(order[1:], start=2):
             for bond in atom.GetBonds():

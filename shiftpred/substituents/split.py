@@ -12,7 +12,7 @@ from shiftpred.substituents.group_smiles import build_bare_molecule, build_group
 from shiftpred.substituents.names import name_group, name_ring_atom
 from shiftpred.substituents.positions import Place, compute_places
 
-__all__ = ["MOST_ATOMS", "Substituent", "split_molecule", "split_substituents"]
+__all__ = ["MOST_ATOMS", "Substituent", "compute_ranks_from", "split_molecule", "split_substituents"]
 
 MOST_ATOMS = 300
 """Heavy atoms of the largest molecule that is taken."""
@@ -82,8 +82,7 @@ def split_substituents(mol: Chem.Mol, atom_index: int, codes: GroupCodes | None 
     [('alpha', 'methyl'), ('alpha', 'acetoxy'), ('beta', 'acetyl'), ('gamma', 'methyl'), ('gamma', 'oxo')]
     """
     _require_site(mol, atom_index)
-    bare, ranks = build_bare_molecule(mol), list(Chem.CanonicalRankAtoms(mol))
-    return _split(bare, codes or compute_group_codes(mol), ranks, atom_index)
+    return _split(build_bare_molecule(mol), codes or compute_group_codes(mol), atom_index)
 
 
 def split_molecule(mol: Chem.Mol) -> list[tuple[Substituent, ...]]:
@@ -99,12 +98,28 @@ def split_molecule(mol: Chem.Mol) -> list[tuple[Substituent, ...]]:
     StructureError
         If the molecule is too large.
     """
+    if not mol.GetNumAtoms():
+        return []
     _require_site(mol, 0)
-    bare, codes, ranks = build_bare_molecule(mol), compute_group_codes(mol), list(Chem.CanonicalRankAtoms(mol))
-    return [_split(bare, codes, ranks, i) for i in range(mol.GetNumAtoms())]
+    bare, codes = build_bare_molecule(mol), compute_group_codes(mol)
+    return [_split(bare, codes, i) for i in range(mol.GetNumAtoms())]
 
 
-def _split(bare: Chem.Mol, codes: GroupCodes, ranks: list[int], atom_index: int) -> tuple[Substituent, ...]:
+def compute_ranks_from(bare: Chem.Mol, atom_index: int) -> list[int]:
+    """Rank all atoms canonically as seen from one of them, which is marked for it.
+
+    Ranks of the unmarked molecule would break ties between equivalent atoms once for all sites, and so differently
+    for two equivalent sites.
+    """
+    atom = bare.GetAtomWithIdx(atom_index)
+    atom.SetIsotope(1)
+    ranks = list(Chem.CanonicalRankAtoms(bare))
+    atom.SetIsotope(0)
+    return ranks
+
+
+def _split(bare: Chem.Mol, codes: GroupCodes, atom_index: int) -> tuple[Substituent, ...]:
+    ranks = compute_ranks_from(bare, atom_index)
     places = compute_places(codes, atom_index, ranks=ranks)
     owner = {place.atom: place for place in places}
     # Farther atoms come later, so one walk backwards collects every subtree.
@@ -126,9 +141,7 @@ def _build_substituent(bare, codes, site, place: Place, owner, atoms) -> Substit
     path = [place.atom]
     while path[-1] != site:
         path.append(owner[path[-1]].parent)
-    cuts = tuple(
-        (a, b) for a in atoms for b in codes.neighbours[a] if b not in inside and (a, b) != (place.atom, place.parent)
-    )
+    cuts = tuple((a, b) for a in atoms for b in codes.neighbours[a] if b not in inside and (a, b) != (place.atom, place.parent))
     group = build_group_smiles(bare, place.parent, place.atom, atoms, cuts)
     on_ring = place.position if place.position in ("ortho", "meta", "para") else ""
     if place.distance == 1 and codes.six_rings[site] and not codes.six_rings[site] & codes.six_rings[place.atom]:

@@ -13,7 +13,7 @@ from sklearn.linear_model import Ridge
 from sklearn.utils.validation import _check_sample_weight, check_is_fitted, validate_data
 
 from shiftpred.errors import InputError
-from shiftpred.features.site_rows import CONSTANT_LEVEL, CONSTANTS, compute_regressors, compute_counted_places
+from shiftpred.features.site_rows import CONSTANT_LEVEL, CONSTANTS, compute_counted_places, compute_regressors
 from shiftpred.records import NUCLEI
 from shiftpred.regression.substituent_model import (
     BASE_PENALTIES,
@@ -21,9 +21,9 @@ from shiftpred.regression.substituent_model import (
     NucleusTable,
     SubstituentModel,
     compute_base_terms,
+    compute_place_penalties,
     compute_place_terms,
     compute_solvent_term,
-    compute_place_penalties,
 )
 from shiftpred.substituents.group_codes import compute_group_codes
 from shiftpred.substituents.positions import POSITIONS
