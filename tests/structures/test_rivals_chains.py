@@ -43,6 +43,8 @@ def test_propyl_and_isopropyl():
         ("tolyl and benzyl", "CC(=O)Oc1ccc(C)cc1", "CC(=O)OCc1ccccc1"),
         ("methylene across an ester", "CCOC(C)=O", "CCC(=O)OC"),
         ("methylene across an amine", "CCNCC", "CCCNC"),
+        ("acetamido from a benzylic ring carbon", "CC(=O)NC1c2ccccc2Oc2ccccc21", "CC(=O)Nc1ccc2c(c1)Cc1ccccc1O2"),
+        ("phenyl across a double bond", "C=C(c1ccccc1)c1ccccc1", "C(=Cc1ccccc1)c1ccccc1"),
         ("N-methyl onto the ring", "CNc1ccccc1", "Cc1ccccc1N"),
     ],
 )

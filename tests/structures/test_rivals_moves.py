@@ -75,6 +75,7 @@ def test_each_move_yields_candidates_on_some_compound(move):
         "c1ccc(CN2CCCCC2)cc1",
         "C/C=C/C(=O)OCC",
         "C[C@H]1CC[C@H](O)CC1",
+        "O=C(Nc1ccccc1)c1ccc(Cl)cc1",
     )
     candidates = [candidate for smiles in compounds for candidate in move.build(Workspace(Chem.CanonSmiles(smiles)))]
     assert candidates

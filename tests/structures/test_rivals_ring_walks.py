@@ -70,6 +70,11 @@ def test_heteroatom_walks_under_its_substituent():
     assert Chem.CanonSmiles("c1ccc(-c2ccc[nH]2)cc1") in _isomers("c1ccc(-n2cccc2)cc1")
 
 
+def test_a_substituent_sits_on_another_ring():
+    found = _isomers("O=C(Nc1ccccc1)c1ccc(Cl)cc1")
+    assert found[Chem.CanonSmiles("O=C(Nc1cccc(Cl)c1)c1ccccc1")] == "chloro on another ring"
+
+
 def test_rings_fused_elsewhere():
     assert Chem.CanonSmiles("NCCc1cccc2c1OCO2") in _isomers("NCCc1ccc2OCOc2c1")
     assert Chem.CanonSmiles("c1ccc2c(c1)ccc1ccccc12") in _isomers("c1ccc2cc3ccccc3cc2c1")

@@ -31,13 +31,13 @@ def build_lactam_lactim_alkyls(workspace: Workspace) -> Iterator[Candidate]:
 
 
 def build_moved_heteroatom_groups(workspace: Workspace) -> Iterator[Candidate]:
-    """Move an alkyl or acyl group from one heteroatom to another one that has a hydrogen."""
+    """Move an alkyl, acyl or aryl group from one heteroatom to another one that has a hydrogen."""
     bearers = [
         index for index in range(workspace.n_atoms) if workspace.element[index] in _BEARERS and workspace.charge[index] == 0
     ]
     for old in bearers:
         for group in workspace.neighbours[old]:
-            if workspace.element[group] != 6 or workspace.aromatic[group] or not workspace.is_bridge(old, group):
+            if workspace.element[group] != 6 or not workspace.is_bridge(old, group):
                 continue
             if workspace.degree[old] == 1 or (workspace.element[old] != 7 and workspace.degree[old] != 2):
                 continue
@@ -51,7 +51,7 @@ def build_moved_heteroatom_groups(workspace: Workspace) -> Iterator[Candidate]:
                     edit=partial(_move, group, old, new),
                     how=partial(_describe_move, workspace, group, old, new),
                     key=(workspace.ranks[old], workspace.ranks[group], workspace.ranks[new]),
-                    penalty=0.0 if len(moved) <= 2 else 0.1,
+                    penalty=(0.0 if len(moved) <= 2 else 0.1) + (0.15 if workspace.aromatic[group] else 0.0),
                 )
 
 

@@ -17,7 +17,7 @@ _ATOM_BUDGET = 1500
 """Heavy atoms that one move may build in all: 60 candidates of 25 atoms; keeps large molecules quick."""
 _CANDIDATES_PER_MOVE = (8, 60)
 """Fewest and most."""
-UNKNOWN_ENVIRONMENT_WEIGHT = 1.0
+UNKNOWN_ENVIRONMENT_WEIGHT = 2.0
 """Added to the distance for the share of atoms in an environment (two bonds) that nobody has measured; own choice."""
 
 
@@ -74,7 +74,7 @@ def _build_queues(workspace: Workspace, moves: Sequence[Move], proposal: Chem.Mo
     for move in moves:
         nearest: dict[str, tuple] = {}
         for candidate in _thin(_without_symmetry_copies(move.build(workspace)), wanted):
-            mol = _build(workspace, candidate)
+            mol = build_structure(workspace, candidate)
             if mol is None:
                 continue
             smiles = Chem.MolToSmiles(mol)
@@ -113,7 +113,7 @@ def _thin(candidates: list[Candidate], wanted: int) -> list[Candidate]:
     return kept
 
 
-def _build(workspace: Workspace, candidate: Candidate) -> Chem.Mol | None:
+def build_structure(workspace: Workspace, candidate: Candidate) -> Chem.Mol | None:
     """Carry out the edit; None where the result has no valid valences."""
     editable = Chem.RWMol(workspace.mol)
     try:

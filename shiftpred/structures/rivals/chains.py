@@ -21,6 +21,8 @@ ALKYL_SKELETONS = {
     "tert-butyl": (4, ((0, 1), (0, 2), (0, 3))),
 }
 _RING_TO_CHAIN_ELEMENTS = frozenset({6, 7, 8, 9, 16, 17, 35, 53})
+_LARGEST_SMALL_GROUP = 4
+"""Heavy atoms of a group that moves between a ring and a carbon beside it."""
 _FURTHEST_METHYL = 6
 """Bonds that a methyl may jump."""
 
@@ -69,15 +71,10 @@ def build_groups_moved_along_chain(workspace: Workspace) -> Iterator[Candidate]:
 
 
 def build_groups_between_ring_and_chain(workspace: Workspace) -> Iterator[Candidate]:
-    """Move a small group from an aromatic ring onto a carbon that hangs on the ring, and the reverse."""
+    """Move a small group from an aromatic ring onto an sp3 carbon beside it, and the reverse."""
     for system in workspace.aromatic_systems:
         carbons = [index for index in system if workspace.element[index] == 6]
-        benzylic = [
-            (ipso, other)
-            for ipso in carbons
-            for other in workspace.exocyclic(ipso)
-            if workspace.is_sp3_carbon(other) and not workspace.ring_degree[other]
-        ]
+        benzylic = [(ipso, other) for ipso in carbons for other in workspace.neighbours[ipso] if workspace.is_sp3_carbon(other)]
         for ipso, side_chain in benzylic:
             for place in carbons:
                 if place == ipso or workspace.distance[place][ipso] > 3:
@@ -86,9 +83,28 @@ def build_groups_between_ring_and_chain(workspace: Workspace) -> Iterator[Candid
                     if group != side_chain and workspace.hydrogens[side_chain] and _is_small(workspace, place, group):
                         yield _between(workspace, group, place, side_chain, "onto the side chain")
                 if workspace.hydrogens[place]:
-                    for group in workspace.exocyclic(side_chain):
+                    for group in workspace.neighbours[side_chain]:
                         if group != ipso and _is_small(workspace, side_chain, group):
                             yield _between(workspace, group, side_chain, place, "from the side chain onto the ring")
+
+
+def build_groups_across_double_bond(workspace: Workspace) -> Iterator[Candidate]:
+    """Move a group to the other carbon of its C=C: 1,1- and 1,2-diphenylethene."""
+    for old in range(workspace.n_atoms):
+        if workspace.element[old] != 6 or workspace.aromatic[old]:
+            continue
+        for new in workspace.neighbours[old]:
+            if workspace.element[new] != 6 or not workspace.hydrogens[new]:
+                continue
+            if workspace.bond_type(old, new) != Chem.BondType.DOUBLE:
+                continue
+            for group in workspace.neighbours[old]:
+                if workspace.is_bridge(old, group):
+                    yield Candidate(
+                        edit=partial(_move, group, old, new),
+                        how=partial(_describe_double_bond_move, workspace, group, old),
+                        key=(workspace.ranks[old], workspace.ranks[group], workspace.ranks[new]),
+                    )
 
 
 def build_walked_multiple_bonds(workspace: Workspace) -> Iterator[Candidate]:
@@ -207,7 +223,7 @@ def _is_small(workspace: Workspace, cut: int, group: int) -> bool:
         workspace.is_bridge(cut, group)
         and workspace.element[group] in _RING_TO_CHAIN_ELEMENTS
         and workspace.charge[group] == 0
-        and len(workspace.side(cut, group)) <= 3
+        and len(workspace.side(cut, group)) <= _LARGEST_SMALL_GROUP
     )
 
 
@@ -284,6 +300,10 @@ def _move_methylene(carbon: int, first: int, second: int, left: int, right: int,
     editable.AddBond(left, carbon, Chem.BondType.SINGLE)
     editable.AddBond(carbon, right, Chem.BondType.SINGLE)
     forget_centre(editable, first, second, left, right)
+
+
+def _describe_double_bond_move(workspace: Workspace, group: int, old: int) -> str:
+    return f"{workspace.group_name(old, group)} on the other carbon of the double bond"
 
 
 def _describe_chain_move(workspace: Workspace, group: int, old: int, new: int, steps: int) -> str:

@@ -52,7 +52,6 @@ UNLIKELY_GROUPS = (
     ("double bond on a three-membered ring", "[CX3;r3]=*"),
     ("thioaldehyde or thioketone", "[CX3;!$(C[N,O,S])]=[SX1]"),
     ("thiocarboxylic acid", "[CX3](=O)[SX2H1]"),
-    ("methylene between two heteroatoms", "[CX4;H2]([N,O,S])[N,O,S]"),
     ("1,2-dione or N,N pair within one aromatic ring", "[$([#6;a](=O)[#6;a]=O),$([#7X3;a]:[#7X3;a])]"),
     ("alpha-halo amine", "[CX4]([F,Cl,Br,I])[#7]"),
 )

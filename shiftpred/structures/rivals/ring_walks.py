@@ -16,6 +16,8 @@ from shiftpred.structures.rivals.workspace import Candidate, Workspace
 
 _LARGEST_WHOLE_RING = 8
 """In a larger ring only places up to two bonds apart are exchanged."""
+_LARGEST_MOVED_SUBSTITUENT = 4
+"""Heavy atoms of a substituent that changes to another ring: up to nitro, acetyl, trifluoromethyl."""
 _BENZENE_PLACES = {1: "ortho", 2: "meta", 3: "para"}
 
 
@@ -46,6 +48,27 @@ def build_swapped_substituents(workspace: Workspace) -> Iterator[Candidate]:
                     key=_symmetry_key(workspace, *sorted((first, second), key=lambda index: workspace.ranks[index])),
                     penalty=_apart(workspace, first, second),
                 )
+
+
+def build_substituents_on_another_ring(workspace: Workspace) -> Iterator[Candidate]:
+    """Move a small substituent from one aromatic ring to another one that is not fused with it."""
+    for home in workspace.aromatic_systems:
+        for old in home:
+            for group in workspace.exocyclic(old):
+                if workspace.element[old] != 6 or not workspace.is_bridge(old, group):
+                    continue
+                if len(workspace.side(old, group)) > _LARGEST_MOVED_SUBSTITUENT:
+                    continue
+                for other in workspace.aromatic_systems:
+                    if other == home or other[0] in workspace.side(old, group):
+                        continue
+                    for new in other:
+                        if workspace.element[new] == 6 and workspace.hydrogens[new]:
+                            yield Candidate(
+                                edit=partial(_move, group, old, new),
+                                how=partial(_describe_ring_change, workspace, group, old),
+                                key=(workspace.ranks[old], workspace.ranks[group], workspace.ranks[new]),
+                            )
 
 
 def build_walked_ring_heteroatoms(workspace: Workspace) -> Iterator[Candidate]:
@@ -121,7 +144,7 @@ def build_refused_rings(workspace: Workspace) -> Iterator[Candidate]:
                 for end in workspace.ring_neighbours[old]:
                     if end != kept and not workspace.same_ring(end, new):
                         yield Candidate(
-                            edit=partial(_refuse, end, old, new),
+                            edit=partial(_move, end, old, new),
                             how=partial(_describe_refusion, workspace, end, old),
                             key=(workspace.ranks[kept], workspace.ranks[end], workspace.ranks[new]),
                         )
@@ -131,8 +154,12 @@ def _is_fusion_carbon(workspace: Workspace, index: int) -> bool:
     return workspace.element[index] == 6 and workspace.aromatic[index] and workspace.ring_degree[index] == 3
 
 
-def _refuse(end: int, old: int, new: int, editable: Chem.RWMol) -> None:
-    move_group(editable, end, old, new)
+def _move(group: int, old: int, new: int, editable: Chem.RWMol) -> None:
+    move_group(editable, group, old, new)
+
+
+def _describe_ring_change(workspace: Workspace, group: int, old: int) -> str:
+    return f"{workspace.group_name(old, group)} on another ring"
 
 
 def _describe_refusion(workspace: Workspace, end: int, old: int) -> str:

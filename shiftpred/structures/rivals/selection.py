@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from dataclasses import dataclass
 
 from rdkit import Chem, rdBase
 
@@ -16,14 +17,16 @@ from shiftpred.structures.rivals.tautomers import build_tautomers
 from shiftpred.structures.rivals.workspace import Workspace
 
 LARGEST_LIMIT = 1000
-_STARTS = (3, 12)
-"""Fewest and most rivals from which a second round starts where the first gives too few; in between a fifth of the
-limit, since each start costs as much as the first round."""
+_FURTHER_ROUNDS = 2
+"""Rounds after the first, each one move further from the proposal, where there are not enough rivals nearby."""
+_STARTS = (3, 10)
+"""Fewest and most rivals from which a further round starts; in between a fifth of the limit, since each start costs as
+much as the first round."""
 _LARGEST_WITH_TAUTOMERS = 20
 """Heavy atoms; up to this size the second round starts from the proposal's tautomers too (3-hydroxypyridine is a walked
 hydroxypyridine, not a walked pyridone). Enumerating them is slow for larger ones, which have rivals enough."""
-_SECOND_ROUND_POOL = 2
-"""The second round collects this many times what is missing, then keeps the nearest."""
+_FURTHER_POOL = 2
+"""A further round collects this many times what is missing, then keeps the nearest."""
 
 
 def build_rivals(
@@ -37,7 +40,7 @@ def build_rivals(
 
     Isomers (substituents walked or swapped on a ring, ring heteroatoms walked, groups turned round, N against O, azole
     nitrogens, chains branched, multiple bonds walked), stereoisomers that NMR can see, and, unless the mass is
-    confirmed, the neighbours by reaction. Where that is not enough, a second move on top of the nearest isomers. In a
+    confirmed, the neighbours by reaction. Where that is not enough, further moves on top of the nearest isomers. In a
     mixture or salt the component with the most carbons is varied and the others stay.
 
     Parameters
@@ -155,8 +158,17 @@ def _expected_rivals(expect: Iterable[str], taken: set[str]) -> list[Rival]:
     return rivals
 
 
+@dataclass(frozen=True)
+class _Start:
+    """Where a further round starts: an isomer on the list, or a tautomer of the proposal."""
+
+    main: str
+    how: str
+    kind: str
+
+
 def _select(main: str, others: str, limit: int, mass_confirmed: bool, taken: set[str]) -> list[Rival]:
-    """Take the nearest rival again and again; where one move is not enough, a second one on top."""
+    """Take the nearest rival again and again; where one move is not enough, further ones on top."""
     if limit <= 0:
         return []
     proposal = Chem.MolFromSmiles(main)
@@ -164,38 +176,38 @@ def _select(main: str, others: str, limit: int, mass_confirmed: bool, taken: set
     moves = [move for move in MOVES if not (mass_confirmed and move.kind == "reaction")]
     queues = CandidateQueues(Workspace(main), moves, proposal, gate)
     rivals: list[Rival] = []
-    starts: list[tuple[str, str, str]] = []
-    while len(rivals) < limit:
-        found = queues.pop()
-        if found is None:
-            fewest, most = _STARTS
-            starts = starts[: max(fewest, min(most, limit // 5))]
-            if proposal.GetNumAtoms() <= _LARGEST_WITH_TAUTOMERS:
-                starts = [(smiles, "", "isomer") for smiles, _ in build_tautomers(proposal)[:2]] + starts
-            return rivals + _second_round(starts, limit - len(rivals), proposal, gate)
+    starts: list[_Start] = []
+    while len(rivals) < limit and (found := queues.pop()) is not None:
         _, examined, move, candidate = found
         rivals.append(Rival(examined.smiles, candidate.how(), move.kind))
         if move.kind != "reaction":
-            starts.append((examined.main, rivals[-1].how, move.kind))
+            starts.append(_Start(examined.main, rivals[-1].how, move.kind))
+    if len(rivals) < limit and proposal.GetNumAtoms() <= _LARGEST_WITH_TAUTOMERS:
+        starts = [_Start(smiles, "", "isomer") for smiles, _ in build_tautomers(proposal)[:2]] + starts
+    fewest, most = _STARTS
+    for _ in range(_FURTHER_ROUNDS):
+        if len(rivals) == limit or not starts:
+            break
+        starts = starts[: max(fewest, min(most, limit // 5))]
+        more, starts = _further_round(starts, limit - len(rivals), proposal, gate)
+        rivals += more
     return rivals
 
 
-def _second_round(starts: list[tuple[str, str, str]], missing: int, proposal: Chem.Mol, gate: Gate) -> list[Rival]:
-    """Return isomers two moves away (or one, from a tautomer), from the nearest isomers onwards."""
+def _further_round(starts: list[_Start], missing: int, proposal: Chem.Mol, gate: Gate) -> tuple[list[Rival], list[_Start]]:
+    """Return isomers one move further away, the nearest first, and where the next round may start."""
     moves = [move for move in MOVES if move.kind != "reaction"]
-    pool: list[tuple[float, Rival]] = []
-    for main, first_how, first_kind in starts:
-        queues = CandidateQueues(Workspace(main), moves, proposal, gate)
-        while len(pool) < _SECOND_ROUND_POOL * missing:
-            found = queues.pop()
-            if found is None:
-                break
+    pool: list[tuple[float, Rival, str]] = []
+    for start in starts:
+        queues = CandidateQueues(Workspace(start.main), moves, proposal, gate)
+        while len(pool) < _FURTHER_POOL * missing and (found := queues.pop()) is not None:
             score, examined, move, candidate = found
-            kind = "stereoisomer" if first_kind == move.kind == "stereoisomer" else "isomer"
-            how = f"{first_how}; and {candidate.how()}" if first_how else candidate.how()
-            pool.append((score, Rival(examined.smiles, how, kind)))
+            how = f"{start.how}; and {candidate.how()}" if start.how else candidate.how()
+            kind = "stereoisomer" if start.kind == move.kind == "stereoisomer" else "isomer"
+            pool.append((score, Rival(examined.smiles, how, kind), examined.main))
     pool.sort(key=lambda entry: (entry[0], entry[1].smiles))
-    return [rival for _, rival in pool[:missing]]
+    nearest = pool[:missing]
+    return [rival for _, rival, _ in nearest], [_Start(main, rival.how, rival.kind) for _, rival, main in nearest]
 
 
 def _tautomer_rivals(main: str, others: str, limit: int, taken: set[str]) -> list[Rival]:
