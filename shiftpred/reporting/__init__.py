@@ -1,1 +1,52 @@
-"""TODO"""
+"""Results → one dictionary → text, CSV, JSON, HTML, SVG (see README.md in this folder).
+
+Nothing is imported before it is asked for: `predict --format csv` loads neither templates nor pictures.
+"""
+
+from importlib import import_module
+
+_HOME = {
+    "PREDICTION_COLUMNS": "shiftpred.reporting.prediction_rows",
+    "build_failure_entry": "shiftpred.reporting.summaries",
+    "build_failure_row": "shiftpred.reporting.prediction_rows",
+    "build_prediction_entry": "shiftpred.reporting.summaries",
+    "build_prediction_rows": "shiftpred.reporting.prediction_rows",
+    "compute_comparison_dict": "shiftpred.reporting.summaries",
+    "compute_explanation_dict": "shiftpred.reporting.summaries",
+    "compute_prediction_dict": "shiftpred.reporting.summaries",
+    "compute_prediction_heading": "shiftpred.reporting.summaries",
+    "compute_ranking_dict": "shiftpred.reporting.summaries",
+    "iterate_prediction_html": "shiftpred.reporting.pages",
+    "iterate_prediction_json": "shiftpred.reporting.json_text",
+    "load_schema": "shiftpred.reporting.json_text",
+    "open_for_saving": "shiftpred.reporting.saving",
+    "render_comparison_html": "shiftpred.reporting.pages",
+    "render_comparison_text": "shiftpred.reporting.text.comparison",
+    "render_explanation_html": "shiftpred.reporting.pages",
+    "render_explanation_text": "shiftpred.reporting.text.explanation",
+    "render_json": "shiftpred.reporting.json_text",
+    "render_lane_svg": "shiftpred.reporting.pictures",
+    "render_prediction_csv": "shiftpred.reporting.prediction_rows",
+    "render_prediction_html": "shiftpred.reporting.pages",
+    "render_prediction_table": "shiftpred.reporting.text.prediction",
+    "render_ranking_html": "shiftpred.reporting.pages",
+    "render_ranking_text": "shiftpred.reporting.text.ranking",
+    "render_structure_svg": "shiftpred.reporting.pictures",
+    "render_verdict_line": "shiftpred.reporting.text.comparison",
+    "render_waterfall_svg": "shiftpred.reporting.pictures",
+    "save_text": "shiftpred.reporting.saving",
+}
+
+__all__ = sorted(_HOME)
+
+
+def __getattr__(name: str):
+    if name not in _HOME:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    value = getattr(import_module(_HOME[name]), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__():
+    return __all__

@@ -1,0 +1,1 @@
+"""Dictionaries → plain text for a terminal."""
