@@ -33,7 +33,7 @@ def test_every_family_file_is_known_here():
     import shiftpred.structures.rivals as rivals
 
     files = {path.stem for path in Path(rivals.__file__).parent.glob("*.py")}
-    helpers = {
+    shared_files = {
         "__init__",
         "admission",
         "candidate_queues",
@@ -46,7 +46,7 @@ def test_every_family_file_is_known_here():
         "tautomers",
         "workspace",
     }
-    assert files == set(FAMILIES) | helpers
+    assert files == set(FAMILIES) | shared_files
 
 
 @pytest.mark.parametrize(
