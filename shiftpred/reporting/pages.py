@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Iterator
 from functools import cache
 
@@ -50,8 +51,8 @@ __all__ = [
     "render_ranking_html",
 ]
 
-WIDE, NARROW = 1040, 340
-"""Widths of the two drawings of one lane; the page shows the one that fits."""
+WIDE, NARROW, PAPER = 1040, 340, 720
+"""Widths of the drawings of one lane: desk, telephone, paper; the page shows the one that fits."""
 _MOST_BESIDE = 4
 """Candidates that are set side by side line by line."""
 
@@ -88,6 +89,11 @@ def _embed(svg: str) -> Markup:
     return Markup(svg.replace(' xmlns="http://www.w3.org/2000/svg"', "", 1))
 
 
+def _is_large(svg: str) -> bool:
+    """Say whether a drawing needs the whole width of the page (and is scrolled on a telephone)."""
+    return float(re.search(r' width="([\d.]+)"', svg)[1]) > 520
+
+
 def render_comparison_html(comparison: Comparison | dict, sample: str = "", date: str = "", reviewer: str = "") -> str:
     """Return the report of a comparison as one HTML file.
 
@@ -111,6 +117,7 @@ def render_comparison_html(comparison: Comparison | dict, sample: str = "", date
     for a in d["assignments"]:
         if not a["within_interval"]:
             marks |= dict.fromkeys(a["equivalent_atoms"], "outside")
+    drawing = render_structure_svg(d["structure"], marks)
     return (
         _environment()
         .get_template("comparison.html")
@@ -119,7 +126,8 @@ def render_comparison_html(comparison: Comparison | dict, sample: str = "", date
             sentence=JUDGEMENT_SENTENCE[d["judgement"]],
             reason_sentence=REASON_CODE_SENTENCE.get(d["reason_code"], d["reason_code"]),
             ratio=format_likelihood_ratio(d["likelihood_ratio"]),
-            structure_picture=_embed(render_structure_svg(d["structure"], marks)),
+            structure_picture=_embed(drawing),
+            large=_is_large(drawing),
             marks_outside="outside" in marks.values(),
             marks_missing="missing" in marks.values(),
             own_picture=_embed(render_structure_svg(d["structure"], numbers=False, scale=22)),
@@ -135,12 +143,15 @@ def _build_lane(d: dict, nucleus: str) -> dict | None:
     wide = render_lane_svg(d, nucleus, WIDE)
     if not wide:
         return None
+    assigned = sort_by_observed(d["assignments"], nucleus)
     return {
         "nucleus": nucleus,
         "wide": _embed(wide),
         "narrow": _embed(render_lane_svg(d, nucleus, NARROW)),
+        "paper": _embed(render_lane_svg(d, nucleus, PAPER)),
         "key": [(_embed(picture), words) for picture, words in build_lane_key(d, nucleus)],
-        "assigned": sort_by_observed(d["assignments"], nucleus),
+        "assigned": assigned,
+        "noted": any(a["note"] or not a["within_interval"] for a in assigned),
     }
 
 
@@ -192,8 +203,9 @@ def iterate_prediction_html(heading: dict, predictions: Iterable[MoleculePredict
     for prediction in predictions:
         failed = isinstance(prediction, RecordFailure)
         m = build_failure_entry(prediction) if failed else build_prediction_entry(prediction)
-        picture = "" if failed else _embed(render_structure_svg(m["structure"]))
-        yield molecule.render(m=m, picture=picture, groups=_group_nuclei(m["nuclei"])) + "\n"
+        picture = "" if failed else render_structure_svg(m["structure"])
+        large = bool(picture) and _is_large(picture)
+        yield molecule.render(m=m, picture=_embed(picture), large=large, groups=_group_nuclei(m["nuclei"])) + "\n"
     yield environment.get_template("prediction_tail.html").render(d=heading) + "\n"
 
 
@@ -215,12 +227,10 @@ def render_explanation_html(explanation: Explanation | Iterable[Explanation] | d
     date : str, default ''
     """
     d = explanation if isinstance(explanation, dict) else compute_explanation_dict(explanation, date)
-    entries = [(e, _embed(render_waterfall_svg(e, WIDE)), _embed(render_waterfall_svg(e, NARROW))) for e in d["explanations"]]
-    return (
-        _environment()
-        .get_template("explanation.html")
-        .render(d=d, entries=entries, structure_picture=_embed(render_structure_svg(d["structure"])))
-    )
+    entries = [(e, *(_embed(render_waterfall_svg(e, width)) for width in (WIDE, NARROW, PAPER))) for e in d["explanations"]]
+    drawing = render_structure_svg(d["structure"])
+    page = _environment().get_template("explanation.html")
+    return page.render(d=d, entries=entries, structure_picture=_embed(drawing), large=_is_large(drawing))
 
 
 def render_ranking_html(ranking: Ranking | dict, sample: str = "", date: str = "", reviewer: str = "") -> str:

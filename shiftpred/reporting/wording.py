@@ -28,7 +28,7 @@ def format_shift(ppm: float | None, nucleus: str) -> str:
     """
     if ppm is None or not math.isfinite(ppm):
         return "–"
-    return f"{ppm:.{1 if nucleus == '13C' else 2}f}"
+    return f"{ppm:.{1 if nucleus == '13C' else 2}f}".replace("-", "−")
 
 
 def format_observed(ppm: float, nucleus: str) -> str:
@@ -37,7 +37,7 @@ def format_observed(ppm: float, nucleus: str) -> str:
     keep = 1 if nucleus == "13C" else 2
     while len(text.split(".")[1]) > keep and text.endswith("0"):
         text = text[:-1]
-    return text
+    return text.replace("-", "−")
 
 
 def format_interval(lower: float | None, upper: float | None, nucleus: str) -> str:

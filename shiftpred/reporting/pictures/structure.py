@@ -15,14 +15,14 @@ from shiftpred.reporting.pictures.svg_elements import STYLE, render_element, ren
 
 __all__ = ["render_structure_svg"]
 
-_NUMBER_COLOUR = (0.0, 0.447, 0.698)
+_NUMBER_COLOUR = (0.0, 114 / 255, 178 / 255)
 _NUMBER_HEX = "#0072B2"
 _LARGEST = 300
 """Heavy atoms; beyond that a drawing tells nothing."""
 
 
 def render_structure_svg(
-    structure: dict, marks: dict[int, str] | None = None, numbers: bool = True, scale: float = 30.0
+    structure: dict, marks: dict[int, str] | None = None, numbers: bool = True, scale: float = 38.0
 ) -> str:
     """Draw a structure.
 
@@ -36,7 +36,7 @@ def render_structure_svg(
         (expected, but no line).
     numbers : bool, default True
         Whether atom numbers are written.
-    scale : float, default 30
+    scale : float, default 38
         Length of a bond, about, in the picture's units.
 
     Returns
@@ -62,9 +62,9 @@ def render_structure_svg(
     options.bondLineWidth = 1.6
     options.scaleBondWidth = False
     options.padding = 0.06
-    options.annotationFontScale = 0.62
+    options.annotationFontScale = 0.8
     options.minFontSize = 12
-    options.maxFontSize = 17
+    options.maxFontSize = 18
     options.setAtomNoteColour(_NUMBER_COLOUR)
     options.addStereoAnnotation = False
     options.simplifiedStereoGroupLabel = False
@@ -111,7 +111,7 @@ def _adopt_colours(drawing: str) -> str:
     drawing = re.sub(r"\sclass='[^']*'", "", drawing)
     drawing = re.sub(r"<(/?)rdkit:[^>]*>", "", drawing)
     drawing = re.sub(r"#000000", STYLE["ink"], drawing)
-    drawing = re.sub(_NUMBER_HEX, STYLE["centre"], drawing, flags=re.IGNORECASE)
+    drawing = re.sub(_NUMBER_HEX, STYLE["number"], drawing, flags=re.IGNORECASE)
     for plain in ("fill-rule:evenodd;", "stroke-opacity:1;", ";stroke-opacity:1", "fill-opacity:1;"):
         drawing = drawing.replace(plain, "")
     return re.sub(r"\n\s*", "", drawing)
@@ -122,7 +122,7 @@ def _render_mark(x: float, y: float, kind: str) -> str:
         r = 15.0
         corners = " ".join(f"{x + dx:.1f},{y + dy:.1f}" for dx, dy in ((0, -r), (r, 0), (0, r), (-r, 0)))
         return render_element(
-            "polygon", points=corners, fill=STYLE["against"], fill_opacity=0.35, stroke=STYLE["against"], stroke_width=2
+            "polygon", points=corners, fill=STYLE["against"], fill_opacity=0.22, stroke=STYLE["against"], stroke_width=2
         )
     return render_element(
         "circle", cx=x, cy=y, r=12.5, fill="none", stroke=STYLE["quiet"], stroke_width=1.6, stroke_dasharray="4 3"

@@ -13,6 +13,7 @@ STYLE = {
     "paper": "var(--paper, #ffffff)",
     "predicted": f"var(--predicted, {OKABE_ITO['sky blue']})",
     "centre": f"var(--centre, {OKABE_ITO['blue']})",
+    "number": "var(--number, #00568a)",
     "against": f"var(--against, {OKABE_ITO['reddish purple']})",
 }
 """Colour by role. On a page the variables follow light, dark and print; in a file of its own the second value holds."""

@@ -100,7 +100,7 @@ def _render_step(entry: dict, start: float, stop: float, top: float) -> list[str
 
 def _render_total(explanation: dict, place, top: float, width: float, narrow: bool, bounds: list[float]) -> list[str]:
     x = place(explanation["shift_ppm"])
-    text = format_shift(explanation["shift_ppm"], explanation["nucleus"])
+    text = f"{explanation['shift_ppm']:.{2 if explanation['nucleus'] == '13C' else 3}f}"
     body = []
     if len(bounds) == 2:
         left, right = place(bounds[1]), place(bounds[0])
