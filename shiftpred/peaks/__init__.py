@@ -1,1 +1,1 @@
-"""TODO"""
+"""Read peak lists; solvent and impurity lines."""
