@@ -3,14 +3,19 @@
 from __future__ import annotations
 
 import csv
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from io import StringIO
-from typing import TextIO
 
 from shiftpred.records import MoleculePrediction, RecordFailure
 from shiftpred.reporting.summaries.common import build_molecule_notes
 
-__all__ = ["PREDICTION_COLUMNS", "build_failure_row", "build_prediction_rows", "render_prediction_csv", "write_rows"]
+__all__ = [
+    "PREDICTION_COLUMNS",
+    "build_failure_row",
+    "build_prediction_rows",
+    "iterate_prediction_csv",
+    "render_prediction_csv",
+]
 
 PREDICTION_COLUMNS = (
     "molecule",
@@ -42,44 +47,35 @@ def build_prediction_rows(prediction: MoleculePrediction) -> list[dict]:
         the molecule as a whole are repeated in every row's `note`. A molecule without a nucleus to predict gives one
         row with only `molecule` and `note` filled.
     """
-    name, common = prediction.structure.name, build_molecule_notes(prediction)
-    if not prediction.nuclei:
-        note = "; ".join((*common, "nothing to predict: no carbon or hydrogen of the kind that was asked for"))
-        return [_build_empty_row(name, note)]
-    return [
-        {
-            "molecule": name,
-            "atom": nucleus.atom,
-            "nucleus": nucleus.nucleus,
-            "hydrogen": nucleus.hydrogen,
-            "attached_h": nucleus.attached_h,
-            "equivalent_atoms": ";".join(map(str, nucleus.equivalent_atoms)),
-            "shift_ppm": nucleus.shift_ppm,
-            "lower_ppm": nucleus.lower_ppm,
-            "upper_ppm": nucleus.upper_ppm,
-            "coverage": nucleus.coverage,
-            "environment": nucleus.environment,
-            "note": "; ".join(part for part in (nucleus.note, *common) if part),
-        }
-        for nucleus in prediction.nuclei
-    ]
+    return [dict(zip(PREDICTION_COLUMNS, cells, strict=True)) for cells in _build_cells(prediction)]
 
 
 def build_failure_row(failure: RecordFailure) -> dict:
     """Return the row of a record that could not be read: only `molecule` and `note` are filled."""
-    return _build_empty_row(failure.name, " ".join(str(failure.error).split()))
+    return dict(zip(PREDICTION_COLUMNS, _build_failure_cells(failure), strict=True))
 
 
-def _build_empty_row(name: str, note: str) -> dict:
-    return dict.fromkeys(PREDICTION_COLUMNS, "") | {"molecule": name, "note": note}
+def iterate_prediction_csv(predictions: Iterable[MoleculePrediction | RecordFailure]) -> Iterator[str]:
+    """Return the CSV piece by piece, so that memory stays flat over any number of molecules.
 
+    Parameters
+    ----------
+    predictions : iterable of MoleculePrediction or RecordFailure
 
-def write_rows(stream: TextIO, rows: Iterable[dict], heading: bool = False) -> None:
-    """Append rows to a CSV stream, after the line of column names where `heading` is set."""
-    writer = csv.DictWriter(stream, PREDICTION_COLUMNS, lineterminator="\n")
-    if heading:
-        writer.writeheader()
-    writer.writerows(rows)
+    Yields
+    ------
+    str
+        The line of column names, then the rows of one record at a time.
+    """
+    stream = StringIO()
+    writer = csv.writer(stream, lineterminator="\n")
+    writer.writerow(PREDICTION_COLUMNS)
+    yield stream.getvalue()
+    for entry in predictions:
+        stream.seek(0)
+        stream.truncate()
+        writer.writerows([_build_failure_cells(entry)] if isinstance(entry, RecordFailure) else _build_cells(entry))
+        yield stream.getvalue()
 
 
 def render_prediction_csv(predictions: Iterable[MoleculePrediction | RecordFailure]) -> str:
@@ -94,8 +90,37 @@ def render_prediction_csv(predictions: Iterable[MoleculePrediction | RecordFailu
     str
         A line of column names, then one line a row; shifts in ppm as the prediction carries them.
     """
-    stream = StringIO()
-    write_rows(stream, (), heading=True)
-    for entry in predictions:
-        write_rows(stream, [build_failure_row(entry)] if isinstance(entry, RecordFailure) else build_prediction_rows(entry))
-    return stream.getvalue()
+    return "".join(iterate_prediction_csv(predictions))
+
+
+def _build_cells(prediction: MoleculePrediction) -> list[tuple]:
+    name, common = prediction.structure.name, build_molecule_notes(prediction)
+    if not prediction.nuclei:
+        nothing = "nothing to predict: no carbon or hydrogen of the kind that was asked for"
+        return [_build_empty_cells(name, "; ".join((*common, nothing)))]
+    shared = "; ".join(common)
+    return [
+        (
+            name,
+            nucleus.atom,
+            nucleus.nucleus,
+            nucleus.hydrogen,
+            nucleus.attached_h,
+            ";".join(map(str, nucleus.equivalent_atoms)),
+            nucleus.shift_ppm,
+            nucleus.lower_ppm,
+            nucleus.upper_ppm,
+            nucleus.coverage,
+            nucleus.environment,
+            f"{nucleus.note}; {shared}" if nucleus.note and shared else nucleus.note or shared,
+        )
+        for nucleus in prediction.nuclei
+    ]
+
+
+def _build_failure_cells(failure: RecordFailure) -> tuple:
+    return _build_empty_cells(failure.name, " ".join(str(failure.error).split()))
+
+
+def _build_empty_cells(name: str, note: str) -> tuple:
+    return (name, *[""] * (len(PREDICTION_COLUMNS) - 2), note)

@@ -71,13 +71,13 @@ def open_for_saving(path: str | os.PathLike) -> Iterator[TextIO]:
     if not target.parent.is_dir():
         raise SettingError(shown, "a folder that does not exist", "a folder that is there", f"make {target.parent} first")
     if target.exists() and not stat.S_ISREG(target.stat().st_mode):
-        with open(target, "w", encoding="utf-8", newline="") as stream:
+        with open(target, "w", encoding="utf-8", errors="backslashreplace", newline="") as stream:
             yield stream
         return
     temporary = None
     try:
         handle, temporary = tempfile.mkstemp(prefix=f".{target.name[:80]}.", suffix=".part", dir=target.parent)
-        with open(handle, "w", encoding="utf-8", newline="") as stream:
+        with open(handle, "w", encoding="utf-8", errors="backslashreplace", newline="") as stream:
             yield stream
             stream.flush()
             os.fsync(stream.fileno())

@@ -49,6 +49,15 @@ def compute_tool_dict() -> dict:
     return {"name": "shiftpred", "version": __version__, "libraries": libraries}
 
 
+def choose_sample_name(sample: str, structure: Structure) -> str:
+    """Return what the report is called: the sample's name, the record's, or what was typed in for the structure."""
+    if sample:
+        return sample
+    if structure.name and not structure.name.isdigit():
+        return structure.name
+    return structure.text if 0 < len(structure.text) <= 120 and "\n" not in structure.text else structure.name
+
+
 def compute_structure_dict(structure: Structure) -> dict:
     """Describe a structure so that it can be drawn again with the user's own atom numbers.
 

@@ -2,14 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 
 from shiftpred.records import MoleculePrediction, NucleusPrediction, RecordFailure
 from shiftpred.reporting.summaries.common import build_molecule_notes
 from shiftpred.reporting.text.layout import clean_text, render_columns, render_points
 from shiftpred.reporting.wording import format_atoms, format_interval, format_shift, format_site
 
-__all__ = ["merge_equivalent", "render_failure_block", "render_prediction_block", "render_prediction_table"]
+__all__ = [
+    "iterate_prediction_table",
+    "merge_equivalent",
+    "render_failure_block",
+    "render_prediction_block",
+    "render_prediction_table",
+]
 
 
 def render_prediction_table(predictions: Iterable[MoleculePrediction | RecordFailure]) -> str:
@@ -24,8 +30,15 @@ def render_prediction_table(predictions: Iterable[MoleculePrediction | RecordFai
     str
         Blocks with an empty line between them; equivalent atoms share one row.
     """
-    blocks = (render_failure_block(p) if isinstance(p, RecordFailure) else render_prediction_block(p) for p in predictions)
-    return "\n".join(blocks)
+    return "".join(iterate_prediction_table(predictions))
+
+
+def iterate_prediction_table(predictions: Iterable[MoleculePrediction | RecordFailure]) -> Iterator[str]:
+    """Return the text block by block, so that memory stays flat."""
+    separator = ""
+    for p in predictions:
+        yield separator + (render_failure_block(p) if isinstance(p, RecordFailure) else render_prediction_block(p))
+        separator = "\n"
 
 
 def render_failure_block(failure: RecordFailure) -> str:

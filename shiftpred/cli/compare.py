@@ -1,0 +1,64 @@
+"""`shiftpred compare`: do the peaks bear the structure out?"""
+
+from __future__ import annotations
+
+import click
+
+from shiftpred.cli.exit_codes import FINE, JUDGEMENT_REACHED
+from shiftpred.cli.options import (
+    ManyWords,
+    build_settings,
+    compare_options,
+    fail_on_option,
+    output_options,
+    report_options,
+    traceback_option,
+)
+
+FORMATS = ("text", "json", "html")
+_WORSE = {"supported": 0, "open": 1, "contradicted": 2}
+
+
+@click.command("compare", cls=ManyWords, short_help="Judge whether peaks bear a structure out; assign them; write a report.")
+@click.argument("structure")
+@compare_options
+@fail_on_option
+@output_options(*FORMATS)
+@report_options
+@traceback_option
+def command(structure, c13, h1, fail_on, format_, output, sample, reviewer, date, **options) -> int:
+    """Compare the measured peaks with STRUCTURE: assignment, leftovers, rivals, judgement.
+
+    STRUCTURE is a SMILES, a file with one record, or - for standard input. PEAKS are a file or a text, plain numbers or as
+    journals print them: '13C NMR (101 MHz, CDCl3) δ 166.6, 132.8, 129.5 (2C)', 'δ 4.38 (q, J = 7.1 Hz, 2H)'.
+    """
+    from shiftpred.cli.boundary import print_message
+    from shiftpred.cli.output import choose_format, write_result
+    from shiftpred.cli.peak_lists import read_peak_options
+    from shiftpred.pipeline import compare
+    from shiftpred.reporting import compute_comparison_dict, render_verdict_line
+    from shiftpred.structures import parse_structure
+
+    chosen = choose_format(format_, output, FORMATS)
+    peaks = read_peak_options(c13, h1)
+    comparison = compare(parse_structure(structure), **peaks, **build_settings(options))
+    document = compute_comparison_dict(comparison, sample, date, reviewer)
+    write_result(output, _render(document, chosen))
+    if output not in (None, "-"):
+        print_message(f"{render_verdict_line(document)}; written to {output}")
+    return choose_exit_code(comparison.judgement, fail_on)
+
+
+def choose_exit_code(judgement: str, fail_on: str | None) -> int:
+    """Return 4 where the judgement is the one of `--fail-on` or worse, else 0."""
+    return JUDGEMENT_REACHED if fail_on and _WORSE[judgement] >= _WORSE[fail_on] else FINE
+
+
+def _render(document: dict, chosen: str) -> str:
+    from shiftpred import reporting
+
+    if chosen == "json":
+        return reporting.render_json(document)
+    if chosen == "html":
+        return reporting.render_comparison_html(document)
+    return reporting.render_comparison_text(document)

@@ -1,0 +1,43 @@
+"""`shiftpred triage`: many samples, a page and a table out."""
+
+from __future__ import annotations
+
+import click
+
+from shiftpred.cli.options import coverage_option, fail_on_option, model_option, solvent_option, traceback_option
+
+
+@click.command("triage", short_help="Judge many samples; write a page, a table and a report each.")
+@click.argument("samples")
+@click.option("--output", required=True, metavar="FOLDER", help="Folder for the results; a stopped run goes on from it.")
+@solvent_option
+@coverage_option
+@click.option("--rivals", type=click.IntRange(min=0), default=9, show_default=True, metavar="N", help="Most rivals to try.")
+@click.option("--mass-confirmed", is_flag=True, help="Masses are known to be right: only isomers are rivals.")
+@click.option("--frequency", type=float, metavar="MHZ", help="1H frequency of the spectrometer.")
+@click.option("--prior", type=float, default=0.5, show_default=True, metavar="P")
+@click.option("--processes", type=click.IntRange(min=1), default=2, show_default=True, metavar="N")
+@click.option("--scheduler", metavar="ADDRESS", help="Send the work to this scheduler instead of to local processes.")
+@fail_on_option
+@model_option
+@traceback_option
+def command(
+    samples, output, solvent, coverage, rivals, mass_confirmed, frequency, prior, processes, scheduler, fail_on, model
+) -> int:
+    """Judge every sample of SAMPLES, a table (sample, smiles, c13, h1, solvent) or a folder of files."""
+    from shiftpred.triage import run_triage
+
+    return run_triage(
+        samples,
+        output,
+        processes=processes,
+        scheduler=scheduler,
+        fail_on=fail_on,
+        solvent=solvent,
+        coverage=coverage,
+        rivals=rivals,
+        mass_confirmed=mass_confirmed,
+        frequency_mhz=frequency,
+        prior=prior,
+        model=model,
+    )
