@@ -13,11 +13,11 @@ from shiftpred.calibration.novelty import NEW_NEIGHBOURS, NEW_SURROUNDINGS, comp
 from shiftpred.errors import SettingError, quote
 from shiftpred.features.molecule_arrays import build_molecule_arrays, join_molecule_arrays
 from shiftpred.features.solvents import SOLVENTS
-from shiftpred.records import MoleculePrediction, NucleusPrediction, Structure
+from shiftpred.records import MoleculePrediction, NucleusPrediction, RecordFailure, Structure
 from shiftpred.structures.environments import compute_environments
 from shiftpred.structures.sites import compute_sites
 
-__all__ = ["predict_molecules", "require_nucleus"]
+__all__ = ["predict_molecules", "require_nucleus", "select_nucleus"]
 
 _BATCH = 64
 _NOVELTY_NOTE = {
@@ -41,17 +41,18 @@ def require_nucleus(nucleus: str) -> tuple[str, ...]:
 
 
 def predict_molecules(
-    structures: Iterable[Structure],
+    structures: Iterable[Structure | RecordFailure],
     bundle: ModelBundle,
     nucleus: str = "both",
     solvent: str | None = None,
     coverage: float = 0.9,
-) -> Iterator[MoleculePrediction]:
+) -> Iterator[MoleculePrediction | RecordFailure]:
     """Predict every nucleus of every structure, in order, batch by batch.
 
     Parameters
     ----------
-    structures : iterable of Structure
+    structures : iterable of Structure or RecordFailure
+        Failures are handed on in their place.
     bundle : ModelBundle
     nucleus : {'13C', '1H', 'both'}
     solvent : str, optional
@@ -61,13 +62,43 @@ def predict_molecules(
 
     Yields
     ------
-    MoleculePrediction
+    MoleculePrediction or RecordFailure
+
+    Raises
+    ------
+    SettingError
+        At once, if nucleus or coverage are outside what is accepted.
     """
     nuclei, coverage = require_nucleus(nucleus), require_coverage(coverage)
     known = solvent if solvent in SOLVENTS else "other" if solvent else ""
-    source = iter(structures)
+    return _iterate(iter(structures), bundle, nuclei, known, solvent, coverage)
+
+
+def _iterate(source, bundle, nuclei, known, solvent, coverage):
     while batch := list(islice(source, _BATCH)):
-        yield from _predict_batch(batch, bundle, nuclei, known, solvent, coverage)
+        readable = [s for s in batch if not isinstance(s, RecordFailure)]
+        predicted = iter(_predict_batch(readable, bundle, nuclei, known, solvent, coverage) if readable else ())
+        for record in batch:
+            yield record if isinstance(record, RecordFailure) else next(predicted)
+
+
+def select_nucleus(prediction: MoleculePrediction, atom_index: int, nucleus: str) -> tuple[NucleusPrediction, float]:
+    """Return the row of one nucleus and its shift in ppm (of two differing hydrogens: the first row and their mean).
+
+    Raises
+    ------
+    SettingError
+        If the atom does not exist or bears no such nucleus.
+    """
+    rows = [n for n in prediction.nuclei if n.atom_index == atom_index and n.nucleus == nucleus]
+    if not rows:
+        atoms = [n.atom for n in prediction.nuclei if n.nucleus == nucleus and n.hydrogen in ("", "a")]
+        raise SettingError(
+            "atom", f"atom_index {atom_index!r}, which has no {nucleus} here",
+            f"an atom with a {nucleus} nucleus (numbers from 1: {', '.join(map(str, atoms[:30])) or 'none'})",
+            "atom numbers on the command line count from 1, atom_index in Python from 0",
+        )
+    return rows[0], sum(r.shift_ppm for r in rows) / len(rows)
 
 
 def _predict_batch(batch, bundle, nuclei, known_solvent, solvent, coverage):
