@@ -10,7 +10,7 @@ import click
 from shiftpred.cli.boundary import ReaderGone, run_guarded
 from shiftpred.cli.options import traceback_option
 
-__all__ = ["application"]
+__all__ = ["command"]
 
 COMMANDS = ("predict", "compare", "rank", "explain", "substituent", "triage", "train", "evaluate")
 """In the order of the help page; each in the file of its name."""
@@ -66,7 +66,7 @@ def _print_versions(ctx: click.Context, _parameter: click.Parameter, wanted: boo
     "--version", is_flag=True, is_eager=True, expose_value=False, callback=_print_versions, help="Print versions and leave."
 )
 @traceback_option
-def application() -> None:
+def command() -> None:
     """Do these 1H and 13C peaks bear this structure out?
 
     Predicts shifts with intervals, assigns measured peaks, judges a structure against its rivals, and explains why a shift

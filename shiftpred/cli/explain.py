@@ -30,9 +30,8 @@ FORMATS = ("text", "json", "html")
 @coverage_option
 @output_options(*FORMATS)
 @model_option
-@click.option("--date", "date_", default="", hidden=True)
 @traceback_option
-def command(structure, atom, nucleus, solvent, coverage, format_, output, model, date_) -> int:
+def command(structure, atom, nucleus, solvent, coverage, format_, output, model) -> int:
     """Explain one shift of STRUCTURE: every substituent with its constants and its contribution in ppm.
 
     The contributions add up to the predicted shift exactly; what the environment model adds stands on a line of its own.
@@ -47,7 +46,7 @@ def command(structure, atom, nucleus, solvent, coverage, format_, output, model,
     index = find_atom(record, atom)
     nuclei = choose_nuclei(record, index, nucleus)
     explanations = [explain(record, index, n, solvent=solvent, coverage=coverage, model=model) for n in nuclei]
-    document = reporting.compute_explanation_dict(explanations, date_)
+    document = reporting.compute_explanation_dict(explanations)
     render = {
         "json": reporting.render_json,
         "html": reporting.render_explanation_html,

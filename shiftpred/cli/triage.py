@@ -21,23 +21,8 @@ from shiftpred.cli.options import coverage_option, fail_on_option, model_option,
 @fail_on_option
 @model_option
 @traceback_option
-def command(
-    samples, output, solvent, coverage, rivals, mass_confirmed, frequency, prior, processes, scheduler, fail_on, model
-) -> int:
+def command(samples, output, frequency, **options) -> int:
     """Judge every sample of SAMPLES, a table (sample, smiles, c13, h1, solvent) or a folder of files."""
     from shiftpred.triage import run_triage
 
-    return run_triage(
-        samples,
-        output,
-        processes=processes,
-        scheduler=scheduler,
-        fail_on=fail_on,
-        solvent=solvent,
-        coverage=coverage,
-        rivals=rivals,
-        mass_confirmed=mass_confirmed,
-        frequency_mhz=frequency,
-        prior=prior,
-        model=model,
-    )
+    return run_triage(samples, output, frequency_mhz=frequency, **options)

@@ -17,6 +17,7 @@ _HOME = {
     "compute_prediction_dict": "shiftpred.reporting.summaries",
     "compute_prediction_heading": "shiftpred.reporting.summaries",
     "compute_ranking_dict": "shiftpred.reporting.summaries",
+    "compute_substituent_dict": "shiftpred.reporting.summaries.substituent",
     "iterate_prediction_csv": "shiftpred.reporting.prediction_rows",
     "iterate_prediction_html": "shiftpred.reporting.pages",
     "iterate_prediction_json": "shiftpred.reporting.json_text",

@@ -12,7 +12,7 @@ from shiftpred.reporting.summaries import build_failure_entry, build_prediction_
 
 __all__ = ["SCHEMA_NAMES", "iterate_prediction_json", "load_schema", "render_json"]
 
-SCHEMA_NAMES = ("comparison-1", "explanation-1", "prediction-1", "ranking-1")
+SCHEMA_NAMES = ("comparison-1", "explanation-1", "prediction-1", "ranking-1", "substituent-1")
 
 
 def render_json(document: dict) -> str:

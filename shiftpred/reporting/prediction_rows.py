@@ -7,11 +7,11 @@ from collections.abc import Iterable, Iterator
 from io import StringIO
 
 from shiftpred.records import MoleculePrediction, RecordFailure
-from shiftpred.reporting.summaries.common import build_molecule_notes
 
 __all__ = [
     "PREDICTION_COLUMNS",
     "build_failure_row",
+    "build_molecule_notes",
     "build_prediction_rows",
     "iterate_prediction_csv",
     "render_prediction_csv",
@@ -31,6 +31,11 @@ PREDICTION_COLUMNS = (
     "environment",
     "note",
 )
+
+
+def build_molecule_notes(prediction: MoleculePrediction) -> list[str]:
+    """Return what was noticed about the molecule as a whole, each note once."""
+    return list(dict.fromkeys((*prediction.structure.notes, *prediction.notes)))
 
 
 def build_prediction_rows(prediction: MoleculePrediction) -> list[dict]:

@@ -10,7 +10,7 @@ import rdkit
 from rdkit import Chem
 from rdkit.Chem import rdMolDescriptors
 
-from shiftpred.records import MoleculePrediction, NucleusPrediction, Structure
+from shiftpred.records import NucleusPrediction, Structure
 
 SCHEMA_VERSION = 1
 """Number of the JSON form. It rises when a key goes or changes its meaning; a new key does not raise it."""
@@ -113,8 +113,3 @@ def build_nucleus_entry(nucleus: NucleusPrediction) -> dict:
         "labile": nucleus.labile,
         "note": nucleus.note,
     }
-
-
-def build_molecule_notes(prediction: MoleculePrediction) -> list[str]:
-    """Return what was noticed about the molecule as a whole, each note once."""
-    return list(dict.fromkeys((*prediction.structure.notes, *prediction.notes)))

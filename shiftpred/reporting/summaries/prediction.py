@@ -5,10 +5,10 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from shiftpred.records import MoleculePrediction, RecordFailure
+from shiftpred.reporting.prediction_rows import build_molecule_notes
 from shiftpred.reporting.summaries.common import (
     CAUTION,
     SCHEMA_VERSION,
-    build_molecule_notes,
     build_nucleus_entry,
     compute_structure_dict,
     compute_tool_dict,

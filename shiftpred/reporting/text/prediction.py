@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 
 from shiftpred.records import MoleculePrediction, NucleusPrediction, RecordFailure
-from shiftpred.reporting.summaries.common import build_molecule_notes
+from shiftpred.reporting.prediction_rows import build_molecule_notes
 from shiftpred.reporting.text.layout import clean_text, render_columns, render_points
 from shiftpred.reporting.wording import format_atoms, format_interval, format_shift, format_site
 
