@@ -42,11 +42,12 @@ class GroupCodes:
     """The graph of one molecule as plain lists, and the code of every directed bond."""
 
     neighbours: tuple[tuple[int, ...], ...]
-    """(n_atoms,) 0-based indices of the heavy atoms bonded to each atom."""
+    """(n_atoms,) 0-based indices of the heavy atoms bonded to each atom; a hydrogen that is an atom of the graph (as in
+    `[H]/N=C/C`) has none and is nobody's neighbour, but counts among the hydrogens of its atom."""
     atoms: tuple[str, ...]
     """(n_atoms,) symbol with charge, lower case if aromatic."""
     hydrogens: tuple[int, ...]
-    """(n_atoms,) hydrogens on each atom, isotopes of hydrogen that are not drawn as atoms included."""
+    """(n_atoms,) hydrogens on each atom, those that are atoms of the graph included."""
     hybrids: tuple[str, ...]
     """(n_atoms,) 'sp3', 'sp2', 'sp', 's' or 'other'."""
     rings: tuple[int, ...]
@@ -94,7 +95,7 @@ def compute_group_codes(mol: Chem.Mol) -> GroupCodes:
             symbol += ("+" if charge > 0 else "-") * abs(charge)
         atoms.append(symbol)
         aromatic.append(is_aromatic)
-        hydrogens.append(atom.GetTotalNumHs())
+        hydrogens.append(atom.GetTotalNumHs(includeNeighbors=True))
         hybrids.append(_HYBRID.get(atom.GetHybridization(), "other"))
     rings, aromatic_rings = [0] * n_atoms, [0] * n_atoms
     info = mol.GetRingInfo()
@@ -115,6 +116,8 @@ def compute_group_codes(mol: Chem.Mol) -> GroupCodes:
     marks = [{} for _ in range(n_atoms)]
     for bond in mol.GetBonds():
         a, b = bond.GetBeginAtomIdx(), bond.GetEndAtomIdx()
+        if (atoms[a] == "H" or atoms[b] == "H") and atoms[a] != atoms[b]:
+            continue
         mark = _BOND_MARK.get(bond.GetBondType(), "~")
         if mark == "-" and bond.GetIdx() in in_ring:
             mark = "_"

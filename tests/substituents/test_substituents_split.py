@@ -14,16 +14,21 @@ from shiftpred.substituents.split import split_molecule, split_substituents
 
 
 def component_of(mol, atom_index):
-    return next(set(f) for f in Chem.GetMolFrags(mol) if atom_index in f)
+    fragment = next(f for f in Chem.GetMolFrags(mol) if atom_index in f)
+    return {a for a in fragment if mol.GetAtomWithIdx(a).GetAtomicNum() != 1}
 
 
 def require_covered_once(mol):
     for site, groups in enumerate(split_molecule(mol)):
+        if mol.GetAtomWithIdx(site).GetAtomicNum() == 1:
+            assert groups == ()
+            continue
         everyone_else = component_of(mol, site) - {site}
         alpha = [s for s in groups if s.position == "alpha"]
         covered = [a for s in alpha for a in s.atoms]
         assert len(covered) == len(set(covered)) and set(covered) == everyone_else
-        assert {s.attached_atom for s in alpha} == {b.GetIdx() for b in mol.GetAtomWithIdx(site).GetNeighbors()}
+        neighbours = {b.GetIdx() for b in mol.GetAtomWithIdx(site).GetNeighbors()}
+        assert {s.attached_atom for s in alpha} == neighbours & everyone_else
         for level, next_level in (("alpha", "beta"), ("beta", "gamma")):
             for group in (s for s in groups if s.position == level):
                 inner = [s for s in groups if s.position == next_level and s.path[: len(group.path)] == group.path]
@@ -111,6 +116,14 @@ def test_stereo_and_isotopes_do_not_change_a_group():
     marked = split_substituents(Chem.MolFromSmiles("C[C@H](O)[C@@H](F)Cl"), 0)
     heavy = split_substituents(Chem.MolFromSmiles("C[13CH](O)C(F)Cl"), 0)
     assert [s.group for s in plain] == [s.group for s in marked] == [s.group for s in heavy]
+
+
+def test_a_drawn_hydrogen_counts_as_hydrogen_and_not_as_a_group():
+    drawn = Chem.MolFromSmiles("[H]/N=C(/C)c1ccccc1")
+    assert drawn.GetAtomWithIdx(0).GetAtomicNum() == 1
+    plain = Chem.MolFromSmiles("N=C(C)c1ccccc1")
+    found = [(s.position, s.group, s.name) for s in split_substituents(drawn, 3)]
+    assert found == [(s.position, s.group, s.name) for s in split_substituents(plain, 2)]
 
 
 def test_other_components_are_left_alone():
