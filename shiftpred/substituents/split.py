@@ -82,7 +82,7 @@ def split_substituents(mol: Chem.Mol, atom_index: int, codes: GroupCodes | None 
     [('alpha', 'methyl'), ('alpha', 'acetoxy'), ('beta', 'acetyl'), ('gamma', 'methyl'), ('gamma', 'oxo')]
     """
     _require_site(mol, atom_index)
-    return _split(build_bare_molecule(mol), codes or compute_group_codes(mol), atom_index)
+    return _split(build_bare_molecule(mol), codes or compute_group_codes(mol), atom_index, {})
 
 
 def split_molecule(mol: Chem.Mol) -> list[tuple[Substituent, ...]]:
@@ -102,7 +102,9 @@ def split_molecule(mol: Chem.Mol) -> list[tuple[Substituent, ...]]:
         return []
     _require_site(mol, 0)
     bare, codes = build_bare_molecule(mol), compute_group_codes(mol)
-    return [_split(bare, codes, i) for i in range(mol.GetNumAtoms())]
+    # One group is seen from many sites: its SMILES is written once.
+    written: dict[tuple, str] = {}
+    return [_split(bare, codes, i, written) for i in range(mol.GetNumAtoms())]
 
 
 def compute_ranks_from(bare: Chem.Mol, atom_index: int) -> list[int]:
@@ -118,7 +120,7 @@ def compute_ranks_from(bare: Chem.Mol, atom_index: int) -> list[int]:
     return ranks
 
 
-def _split(bare: Chem.Mol, codes: GroupCodes, atom_index: int) -> tuple[Substituent, ...]:
+def _split(bare: Chem.Mol, codes: GroupCodes, atom_index: int, written: dict[tuple, str]) -> tuple[Substituent, ...]:
     ranks = compute_ranks_from(bare, atom_index)
     places = compute_places(codes, atom_index, ranks=ranks)
     owner = {place.atom: place for place in places}
@@ -131,18 +133,21 @@ def _split(bare: Chem.Mol, codes: GroupCodes, atom_index: int) -> tuple[Substitu
     for place in places:
         if place.distance > 3 and place.position != "para":
             continue
-        out.append(_build_substituent(bare, codes, atom_index, place, owner, sorted(below[place.atom])))
+        out.append(_build_substituent(bare, codes, atom_index, place, owner, sorted(below[place.atom]), written))
     out.sort(key=lambda s: (len(s.path), s.group, ranks[s.attached_atom]))
     return tuple(out)
 
 
-def _build_substituent(bare, codes, site, place: Place, owner, atoms) -> Substituent:
+def _build_substituent(bare, codes, site, place: Place, owner, atoms, written) -> Substituent:
     inside = set(atoms)
     path = [place.atom]
     while path[-1] != site:
         path.append(owner[path[-1]].parent)
     cuts = tuple((a, b) for a in atoms for b in codes.neighbours[a] if b not in inside and (a, b) != (place.atom, place.parent))
-    group = build_group_smiles(bare, place.parent, place.atom, atoms, cuts)
+    key = (place.parent, place.atom, *atoms)
+    group = written.get(key)
+    if group is None:
+        group = written[key] = build_group_smiles(bare, place.parent, place.atom, atoms, cuts)
     on_ring = place.position if place.position in ("ortho", "meta", "para") else ""
     if place.distance == 1 and codes.six_rings[site] and not codes.six_rings[site] & codes.six_rings[place.atom]:
         on_ring = "ipso"
