@@ -55,6 +55,11 @@ def run_guarded(run: Callable[[], object], show_traceback: bool) -> int:
         print_message(str(error))
         return BAD_INPUT
     except Exception as error:
+        refusal = _build_refusal(error)
+        if refusal:
+            _let_output_go()
+            print_message(refusal)
+            return BAD_INPUT
         if show_traceback:
             traceback.print_exc()
             print_message(f"{type(error).__name__}: {error}. This is a fault of ours.")
@@ -66,6 +71,16 @@ def run_guarded(run: Callable[[], object], show_traceback: bool) -> int:
 def print_message(text: str) -> None:
     """Write one line to standard error, whatever line ends the text has."""
     click.echo(f"shiftpred: {' '.join(str(text).split())}", err=True)
+
+
+def _build_refusal(error: Exception) -> str | None:
+    """Return the message where standard output could not be written (a full disk), which is no fault of ours."""
+    if not isinstance(error, OSError):
+        return None
+    from shiftpred.reporting import build_refusal
+
+    refusal = build_refusal(error, "standard output", "free space where the output goes")
+    return None if refusal is None else str(refusal)
 
 
 def _prepare_streams() -> None:

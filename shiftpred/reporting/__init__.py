@@ -12,6 +12,7 @@ _HOME = {
     "build_prediction_entry": "shiftpred.reporting.summaries",
     "build_prediction_frame": "shiftpred.reporting.data_frames",
     "build_prediction_rows": "shiftpred.reporting.prediction_rows",
+    "build_refusal": "shiftpred.reporting.saving",
     "compute_comparison_dict": "shiftpred.reporting.summaries",
     "compute_explanation_dict": "shiftpred.reporting.summaries",
     "compute_prediction_dict": "shiftpred.reporting.summaries",

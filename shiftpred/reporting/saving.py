@@ -13,7 +13,7 @@ from typing import TextIO
 
 from shiftpred.errors import SettingError, quote
 
-__all__ = ["open_for_saving", "save_text"]
+__all__ = ["build_refusal", "open_for_saving", "save_text"]
 
 
 def save_text(path: str | os.PathLike, text: str) -> None:
@@ -70,12 +70,12 @@ def open_for_saving(path: str | os.PathLike) -> Iterator[TextIO]:
         raise SettingError(shown, "a folder", "the name of a file", "add a file name to the folder")
     if not target.parent.is_dir():
         raise SettingError(shown, "a folder that does not exist", "a folder that is there", f"make {target.parent} first")
-    if target.exists() and not stat.S_ISREG(target.stat().st_mode):
-        with open(target, "w", encoding="utf-8", errors="backslashreplace", newline="") as stream:
-            yield stream
-        return
     temporary = None
     try:
+        if target.exists() and not stat.S_ISREG(target.stat().st_mode):
+            with open(target, "w", encoding="utf-8", errors="backslashreplace", newline="") as stream:
+                yield stream
+            return
         handle, temporary = tempfile.mkstemp(prefix=f".{target.name[:80]}.", suffix=".part", dir=target.parent)
         with open(handle, "w", encoding="utf-8", errors="backslashreplace", newline="") as stream:
             yield stream
@@ -86,7 +86,7 @@ def open_for_saving(path: str | os.PathLike) -> Iterator[TextIO]:
         temporary = None
         _sync_folder(target.parent)
     except OSError as error:
-        refusal = _build_refusal(error, shown, target)
+        refusal = build_refusal(error, shown, f"free space on {target.parent}")
         if refusal is None:
             raise
         raise refusal from error
@@ -116,16 +116,14 @@ def _sync_folder(folder: Path) -> None:
             os.close(handle)
 
 
-def _build_refusal(error: OSError, shown: str, target: Path) -> SettingError | None:
-    """Turn the operating system's refusal into ours; None for anything that has nothing to do with writing."""
+def build_refusal(error: OSError, shown: str, make_room: str) -> SettingError | None:
+    """Turn the operating system's refusal to write into ours; None for anything that has nothing to do with writing."""
     if error.errno in (errno.EACCES, errno.EPERM, errno.EROFS):
-        return SettingError(
-            shown, "a place that may not be written to", "a folder with write permission", "another folder with --output"
-        )
+        accepted = "a folder with write permission"
+        return SettingError(shown, "a place that may not be written to", accepted, "another folder with --output")
     if error.errno in (errno.ENOSPC, errno.EDQUOT, errno.EFBIG):
-        return SettingError(
-            shown, "a full disk; the old file, if any, is as it was", "room for the new file", f"free space on {target.parent}"
-        )
+        came = "a full disk"
+        return SettingError(shown, came, "room for the new file", make_room)
     if error.errno in (errno.ENAMETOOLONG, errno.EINVAL):
         return SettingError(shown, "a name that this file system refuses", "a shorter, plainer name", "report.html")
     return None

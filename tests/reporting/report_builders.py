@@ -138,7 +138,8 @@ def build_supported(**changes) -> Comparison:
         likelihood_ratio=3812.4,
         reasons=(
             "All 7 kinds of carbon have a line inside their 90 % interval; mean difference 0.13 ppm.",
-            "The nearest rival, phenyl propanoate, fits 3,800 times worse: it needs a carbon near 150 ppm (ipso C-O), and none is there.",
+            "The nearest rival, phenyl propanoate, fits 3,800 times worse: it needs a carbon near 150 ppm (ipso C-O), "
+            "and none is there.",
             "4 leftover lines are all of ethyl acetate in CDCl3.",
         ),
         assignments=build_assignments("13C", CARBONS, C13_SHIFTS) + build_assignments("1H", HYDROGENS, H1_SHIFTS),
