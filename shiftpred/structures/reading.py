@@ -134,7 +134,7 @@ def _parse_file(path: Path) -> Iterator[Structure | RecordFailure]:
     try:
         raw = gzip.open(path, "rb") if path.suffix.lower() == ".gz" else open(path, "rb")
         with raw:
-            if not raw.peek(1) if hasattr(raw, "peek") else False:
+            if not raw.peek(1):
                 raise InputError(str(path), "an empty file", "at least one structure", "check that the export worked")
             suffix = Path(path.name.lower().removesuffix(".gz")).suffix
             encoding = _guess_encoding(raw.peek(65536)[:65536])
@@ -240,19 +240,25 @@ def _parse_block(lines: list[str], number: int, where: str) -> Structure | Recor
         if mol is None:
             raise StructureError(place, "a molfile that cannot be read", "MOL V2000 or V3000", "export the structure again")
         notes = ()
-        if mol.GetNumAtoms() > 1 and mol.GetNumConformers():
-            conformer = mol.GetConformer()
-            if not conformer.GetPositions().any():
+        if mol.GetNumAtoms() > 1:
+            conformer = mol.GetConformer() if mol.GetNumConformers() else None
+            if conformer is None or not conformer.GetPositions().any():
                 notes = ("no coordinates in the molfile: wedges and double-bond geometry are not known from it",)
-            elif conformer.Is3D():
-                Chem.AssignStereochemistryFrom3D(mol) if _try_sanitise(mol) else None
-            else:
-                _try_sanitise(mol) and Chem.AssignChiralTypesFromBondDirs(mol)
-                Chem.SetDoubleBondNeighborDirections(mol) if _try_sanitise(mol) else None
-                Chem.AssignStereochemistry(mol, cleanIt=True, force=True)
+            elif _try_sanitise(mol):
+                _read_stereo(mol, conformer)
         return _build(mol, name, place, place, notes)
 
     return _attempt(name, build)
+
+
+def _read_stereo(mol, conformer) -> None:
+    """Take configurations from coordinates and wedges."""
+    if conformer.Is3D():
+        Chem.AssignStereochemistryFrom3D(mol)
+        return
+    Chem.AssignChiralTypesFromBondDirs(mol)
+    Chem.SetDoubleBondNeighborDirections(mol)
+    Chem.AssignStereochemistry(mol, cleanIt=True, force=True)
 
 
 def _try_sanitise(mol) -> bool:

@@ -97,11 +97,15 @@ class _LabelTest:
         # Atoms with exactly one pair of equal ligands become centres when a label tells the pair apart.
         self.latent = [i for i in self.candidates if len({rank[j] for j in neighbours[i]}) == len(neighbours[i]) - 1]
 
-    def has_other_centre(self, labelled: int, besides: int) -> bool:
-        """Say whether there is a stereocentre other than `besides` once the atom `labelled` carries a label."""
+    def has_other_centre(self, labelled: int, besides: int, arms=None, distance=None) -> bool:
+        """Say whether there is a stereocentre other than `besides` once the atom `labelled` carries a label.
+
+        With `arms` (two ligands of `besides`), centres that owe their being to the label and lie between the arms do not
+        count: the mirror that exchanges the arms leaves them as they are (C-4 for the arms of C-1 in a cyclohexane).
+        """
         if self.centres - {besides}:
             return True
-        latent = [i for i in self.latent if i != besides]
+        latent = [i for i in self.latent if i != besides and not (arms and self._lies_between(i, arms, distance))]
         if not latent:
             return False
         atom = self.mol.GetAtomWithIdx(labelled)
@@ -109,6 +113,12 @@ class _LabelTest:
         new = list(Chem.CanonicalRankAtoms(self.mol, breakTies=False, includeChirality=False))
         atom.SetIsotope(0)
         return any(len({new[j] for j in self.neighbours[i]}) == len(self.neighbours[i]) for i in latent)
+
+    def _lies_between(self, centre, arms, distance):
+        ranks = [self.rank[j] for j in self.neighbours[centre]]
+        x, y = (j for j in self.neighbours[centre] if ranks.count(self.rank[j]) == 2)
+        nearer = [distance[k, arms[0]] - distance[k, arms[1]] for k in (x, y)]
+        return nearer[0] * nearer[1] < 0
 
 
 def _hydrogens_differ(atom, i, atoms, neighbours, rank, test):
@@ -164,10 +174,8 @@ def _split_groups(mol, atoms, neighbours, rank, group, test):
     sets = {r: m for r, m in sets.items() if len(m) > 1}
     drawn = any(a.GetChiralTag() for a in atoms) or any(b.GetStereo() > Chem.BondStereo.STEREOANY for b in mol.GetBonds())
     fresh = len(atoms)
-    # Sets of atoms whose arms part at a prochiral atom, nearest first, so that what lies further out follows.
-    apart: set[tuple[int, int]] = set()
     distance = Chem.GetDistanceMatrix(mol)
-    for members in sorted(sets.values(), key=lambda m: min(distance[m[0], x] for x in m[1:])):
+    for members in sets.values():
         labels = _compute_labels(mol, members) if drawn else None
         classes: list[list[int]] = []
         for i in members:
@@ -182,7 +190,6 @@ def _split_groups(mol, atoms, neighbours, rank, group, test):
         for c in classes[1:]:
             group[c] = fresh
             fresh += 1
-        apart.update((c[0], d[0]) for k, c in enumerate(classes) for d in classes[k + 1 :])
 
 
 def _compute_labels(mol, members):
@@ -227,4 +234,4 @@ def _parted(i, j, atoms, neighbours, rank, distance, test):
         return False
     if hydrogens == 0 and rest[0] == rest[1]:
         return False
-    return test.has_other_centre(i, p)
+    return test.has_other_centre(i, p, arms, distance)
