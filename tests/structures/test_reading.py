@@ -94,7 +94,9 @@ def test_sdf_with_a_bad_record(tmp_path):
 
 def test_molfile_without_coordinates_is_read_and_noted(tmp_path):
     path = tmp_path / "some.mol"
-    path.write_text(Chem.MolToMolBlock(Chem.MolFromSmiles("CCO")))
+    mol = Chem.MolFromSmiles("CCO")
+    mol.AddConformer(Chem.Conformer(3))
+    path.write_text(Chem.MolToMolBlock(mol))
     assert "no coordinates" in parse_structure(path).notes[0]
 
 
