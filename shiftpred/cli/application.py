@@ -61,7 +61,7 @@ def _print_versions(ctx: click.Context, _parameter: click.Parameter, wanted: boo
     ctx.exit()
 
 
-@click.group(cls=Application, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.group("shiftpred", cls=Application, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
 @click.option(
     "--version", is_flag=True, is_eager=True, expose_value=False, callback=_print_versions, help="Print versions and leave."
 )

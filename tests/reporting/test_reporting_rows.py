@@ -110,8 +110,6 @@ def test_the_frame_has_the_same_rows_as_the_file():
     [
         "wording",
         "saving",
-        "prediction_rows",
-        "json_text",
         "summaries.common",
         "text.layout",
         "pictures.axis",
@@ -120,4 +118,4 @@ def test_the_frame_has_the_same_rows_as_the_file():
 )
 def test_examples_in_docstrings_run(module):
     result = doctest.testmod(importlib.import_module(f"shiftpred.reporting.{module}"))
-    assert result.failed == 0
+    assert result.failed == 0 and result.attempted > 0

@@ -134,8 +134,9 @@ def test_an_unbounded_end_is_null_and_the_text_is_strict_json():
 
 
 def test_probabilities_keep_their_size_near_the_ends():
-    document = compute_comparison_dict(replace(build.build_supported(), probability=0.9999999, likelihood_ratio=1.2345678e9))
-    assert document["probability"] == 1.0 or document["probability"] > 0.999999
+    certain = replace(build.build_supported(), probability=1 - 1.23456e-9, likelihood_ratio=1.2345678e9)
+    document = compute_comparison_dict(certain)
+    assert document["probability"] == pytest.approx(1 - 1.23456e-9, abs=1e-12) and document["probability"] < 1
     assert document["likelihood_ratio"] == pytest.approx(1.23457e9)
     assert compute_comparison_dict(replace(build.build_supported(), probability=1.23456e-9))["probability"] == 1.23456e-9
 

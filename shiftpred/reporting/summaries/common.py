@@ -35,10 +35,25 @@ def compute_number(value: float | None, decimals: int = 4) -> float | None:
 
 
 def compute_significant(value: float | None, digits: int = 6) -> float | None:
-    """Return `value` to so many significant digits (probabilities near 0 and 1 keep their size), None where unbounded."""
+    """Return `value` to so many significant digits None where unbounded."""
     if value is None or not math.isfinite(value):
         return None
     return float(f"{float(value):.{digits}g}")
+
+
+def compute_probability(value: float | None) -> float | None:
+    """Return a probability to six digits of its distance to 0 or to 1, whichever is nearer; None where missing.
+
+    Examples
+    --------
+    >>> compute_probability(0.97314159), compute_probability(0.99999987654321)
+    (0.9731416, 0.999999876543)
+    """
+    if value is None or not math.isfinite(value):
+        return None
+    if value <= 0.5:
+        return compute_significant(value)
+    return round(1.0 - compute_significant(1.0 - value), 12)
 
 
 def compute_tool_dict() -> dict:

@@ -9,7 +9,7 @@ from shiftpred.reporting.summaries.common import (
     CAUTION,
     SCHEMA_VERSION,
     compute_number,
-    compute_significant,
+    compute_probability,
     compute_structure_dict,
     compute_tool_dict,
 )
@@ -48,7 +48,7 @@ def compute_ranking_dict(ranking: Ranking, sample: str = "", date: str = "", rev
         "input_sha256": ranking.input_hash,
         "settings": asdict(ranking.settings) | {"expected": list(ranking.settings.expected)},
         "candidates": [_build_candidate(c, ranking) for c in ranking.candidates],
-        "none_of_these": compute_significant(ranking.none_of_these),
+        "none_of_these": compute_probability(ranking.none_of_these),
         "failures": [{"name": f.name, "note": str(f.error)} for f in ranking.failures],
         "reasons": list(ranking.reasons),
         "cautions": list(dict.fromkeys((*ranking.cautions, CAUTION))),
@@ -61,7 +61,7 @@ def _build_candidate(candidate: RankedCandidate, ranking: Ranking) -> dict:
     return {
         "candidate": candidate.candidate,
         "structure": compute_structure_dict(candidate.structure),
-        "probability": compute_significant(candidate.probability),
+        "probability": compute_probability(candidate.probability),
         "misfit": compute_number(candidate.misfit),
         "assignments": [build_assignment_entry(a, ranking.peaks) for a in candidate.assignments],
         "unexplained": [build_unexplained_entry(line) for line in candidate.unexplained],
