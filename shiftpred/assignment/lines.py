@@ -92,7 +92,16 @@ def build_lines(peak_list: PeakList) -> Lines:
         other = "1H" if nucleus == "13C" else "13C"
         extra[known] += np.log(compute_background_density(other, pair[known]))
     return Lines(
-        nucleus, peaks, shift, lower, upper, is_range, count, attached, pair, extra,
+        nucleus,
+        peaks,
+        shift,
+        lower,
+        upper,
+        is_range,
+        count,
+        attached,
+        pair,
+        extra,
         split_stated=nucleus == "13C" and any(p.couplings_hz for p in peaks),
     )
 
@@ -119,12 +128,7 @@ def build_offers(lines: Lines, frequency_mhz: float, patterns: frozenset[str]) -
     plain.sort(key=lambda i: lines.shift[i])
     y = lines.shift
     widest = _WIDEST_SPLITTING_HZ / frequency_mhz
-    doublets = [
-        (i, j)
-        for a, i in enumerate(plain)
-        for j in plain[a + 1 :]
-        if 0.005 < y[j] - y[i] <= widest
-    ]
+    doublets = [(i, j) for a, i in enumerate(plain) for j in plain[a + 1 :] if 0.005 < y[j] - y[i] <= widest]
     offers = []
     if "d" in patterns:
         offers += [Offer((i, j), (y[i] + y[j]) / 2, "d", (y[j] - y[i],)) for i, j in doublets]

@@ -14,9 +14,7 @@ __all__ = ["EXCHANGING_SOLVENTS", "compute_carbon_chance", "compute_hydrogen_cha
 
 EXCHANGING_SOLVENTS = frozenset({"CD3OD", "D2O"})
 """Their deuterium replaces labile hydrogens."""
-_METALS = frozenset(
-    [3, 4, 11, 12, 13, 19, 20, *range(21, 33), *range(37, 51), *range(55, 84), *range(87, 104)]
-)
+_METALS = frozenset([3, 4, 11, 12, 13, 19, 20, *range(21, 33), *range(37, 51), *range(55, 84), *range(87, 104)])
 
 
 def compute_carbon_chance(mol: Chem.Mol, site: Site) -> tuple[float, str]:

@@ -47,6 +47,8 @@ class NucleusFit:
     """Lines that nothing takes."""
     impurities: tuple[str, ...]
     """Names of the coherent sets that were found."""
+    missing_notes: tuple[str, ...]
+    """(n,) what may excuse each unit, should it be missing."""
     terms: dict = field(default_factory=dict)
     """Parts of the evidence: 'missing', 'extra' (log weights), counts, standardised residuals."""
 
@@ -122,7 +124,7 @@ def assign_nucleus(
         accepted.append(candidate)
         candidates.remove(candidate)
     problem, chosen = _keep_chosen_offers(problem, chosen, len(lines))
-    return _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, always, parameters)
+    return _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, peaks, parameters)
 
 
 def _gather(always, accepted) -> tuple[Guest, ...]:
@@ -201,8 +203,13 @@ def _improve(problem: _Problem, chosen: np.ndarray, resolution: float):
     back = {c: k for k, c in enumerate(keep)}
     start = np.array([back.get(c, -1) for c in chosen])
     improved, total = improve_with_counts(
-        start, problem.weight[:, keep], problem.absent, problem.leftover[keep], problem.count,
-        CountPenalty(problem.stated[keep]), math.log(resolution),
+        start,
+        problem.weight[:, keep],
+        problem.absent,
+        problem.leftover[keep],
+        problem.count,
+        CountPenalty(problem.stated[keep]),
+        math.log(resolution),
     )
     return np.array([keep[c] if c >= 0 else -1 for c in improved]), total
 
@@ -220,8 +227,13 @@ def _keep_chosen_offers(problem: _Problem, chosen: np.ndarray, m: int):
         return problem, chosen
     back = {c: k for k, c in enumerate(keep)}
     smaller = _Problem(
-        problem.weight[:, keep], problem.without, problem.absent, problem.leftover[keep], [problem.columns[c] for c in keep],
-        problem.count, problem.stated[keep],
+        problem.weight[:, keep],
+        problem.without,
+        problem.absent,
+        problem.leftover[keep],
+        [problem.columns[c] for c in keep],
+        problem.count,
+        problem.stated[keep],
     )
     return smaller, np.array([back.get(c, -1) for c in chosen])
 
@@ -230,7 +242,8 @@ def _update_offset(units, guests, problem, chosen, offset, parameters):
     n = len(units)
     used = np.flatnonzero(chosen >= 0)
     keep = [
-        k for k in used
+        k
+        for k in used
         if not (k < n and units.labile[k]) and not (k >= n and guests[k - n].scale > 2 * parameters.solvent_scale_ppm)
     ]
     if not keep:
@@ -257,7 +270,7 @@ def _all_found(problem, chosen, begin, resolution) -> bool:
     return True
 
 
-def _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, always, parameters) -> NucleusFit:
+def _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, peaks, parameters) -> NucleusFit:
     n, m = len(units), len(lines)
     counted = not np.isnan(problem.stated).all()
     if counted:
@@ -277,8 +290,20 @@ def _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, a
     terms["extra_lines"] = len(leftover)
     terms["lines"] = m
     return NucleusFit(
-        units, lines, guests, tuple(problem.columns), chosen, sharing, probability, offset, anchored, float(evidence),
-        tuple(sorted(leftover)), tuple(s.name for s in accepted), terms,
+        units,
+        lines,
+        guests,
+        tuple(problem.columns),
+        chosen,
+        sharing,
+        probability,
+        offset,
+        anchored,
+        float(evidence),
+        tuple(sorted(leftover)),
+        tuple(s.name for s in accepted),
+        _explain_missing(units, peaks),
+        terms,
     )
 
 
@@ -297,21 +322,28 @@ def _soften_counted(problem, chosen, resolution):
     factor = np.where(users[None, :] <= 1, penalty.compute(problem.count[:, None] + 0 * sums[None, :]), factor)
     weight = problem.weight + factor
     shared = np.log(resolution) * (users > 1)
-    gain = weight[:, seats] - problem.absent[:, None] - (problem.leftover / np.maximum(users, 1))[None, seats] + shared[None, seats]
+    base = (problem.leftover / np.maximum(users, 1) - shared)[None, :] + problem.absent[:, None]
+    gain = (weight - base)[:, seats]
     soft, log_sum = compute_soft_assignment(gain)
     probability = np.zeros((len(chosen), len(problem.columns)))
     np.add.at(probability.T, seats, soft.T)
     used = np.flatnonzero(chosen >= 0)
-    hard = float(
-        (weight - problem.absent[:, None] - (problem.leftover / np.maximum(users, 1))[None, :] + shared[None, :])[
-            used, chosen[used]
-        ].sum()
-    )
+    hard = float((weight - base)[used, chosen[used]].sum())
     exact = float(
-        problem.weight[used, chosen[used]].sum() + problem.absent[chosen < 0].sum()
+        problem.weight[used, chosen[used]].sum()
+        + problem.absent[chosen < 0].sum()
         + np.where(users == 0, problem.leftover, penalty.compute(sums) + (users - 1) * np.log(resolution)).sum()
     )
     return np.minimum(probability, 1.0), exact + max(0.0, log_sum - hard)
+
+
+def _explain_missing(units, peaks) -> tuple[str, ...]:
+    notes = list(units.missing_note)
+    if peaks.hiding is not None and len(units):
+        for k, hidden in enumerate(peaks.compute_hidden(units)):
+            if hidden > 0.15:
+                notes[k] = "; ".join(filter(None, (notes[k], "may lie under the solvent line")))
+    return tuple(notes)
 
 
 def _credit_partners(units, problem, chosen, resolution) -> float:

@@ -11,7 +11,7 @@ from shiftpred.assignment.guests import GuestSet, build_impurity_guests, build_s
 from shiftpred.assignment.lines import Lines, build_lines
 from shiftpred.assignment.units import Units
 from shiftpred.assignment.weights import COMMON_CARBON_FREQUENCIES
-from shiftpred.records import PeakList
+from shiftpred.records import NUCLEI, PeakList
 
 __all__ = ["PreparedPeaks", "compute_carbon_frequency", "prepare_peaks"]
 
@@ -65,32 +65,42 @@ def compute_carbon_frequency(frequency_mhz: float | None) -> float | None:
     return frequency_mhz * _CARBON_RATIO
 
 
-def prepare_peaks(peak_list: PeakList, solvent: str | None = None, frequency_mhz: float | None = None) -> PreparedPeaks:
-    """Make a peak list ready for assignment.
+def prepare_peaks(
+    peak_lists: dict[str, PeakList], solvent: str | None = None, frequency_mhz: float | None = None
+) -> dict[str, PreparedPeaks]:
+    """Make all peak lists of a sample ready for assignment.
 
     Parameters
     ----------
-    peak_list : PeakList
+    peak_lists : dict of str to PeakList
+        By nucleus.
     solvent : str, optional
-        Short name; None: the one that the list states, if any.
+        Short name; None: the one that a list states, if any.
     frequency_mhz : float, optional
-        Of the spectrometer (1H, or 13C where it is a common magnet's 13C frequency); the list's own heading wins.
+        Of the spectrometer (1H, or 13C where it is a common magnet's 13C frequency); a list's own heading wins.
 
     Returns
     -------
-    PreparedPeaks
+    dict of str to PreparedPeaks
+        By nucleus, 13C first.
     """
-    solvent = solvent or peak_list.solvent
-    lines = build_lines(peak_list)
-    frequency = peak_list.frequency_mhz if peak_list.nucleus == "13C" else None
-    frequency = frequency or compute_carbon_frequency(frequency_mhz)
-    always = build_solvent_guests(solvent, peak_list.nucleus)
-    hiding = np.array([g.shift for s in always for g in s.guests if g.hides])
-    return PreparedPeaks(
-        peak_list,
-        lines,
-        always,
-        build_impurity_guests(solvent, lines),
-        (frequency,) if frequency else COMMON_CARBON_FREQUENCIES,
-        hiding if len(hiding) else None,
-    )
+    ordered = [peak_lists[n] for n in NUCLEI if n in peak_lists and peak_lists[n].peaks]
+    solvent = solvent or next((p.solvent for p in ordered if p.solvent), None)
+    lines = {p.nucleus: build_lines(p) for p in ordered}
+    impurities = build_impurity_guests(solvent, {n: x.shift for n, x in lines.items()})
+    frequency = next((p.frequency_mhz for p in ordered if p.nucleus == "13C"), None) or compute_carbon_frequency(frequency_mhz)
+    frequency = frequency or next((p.frequency_mhz * _CARBON_RATIO for p in ordered if p.frequency_mhz), None)
+    out = {}
+    for peak_list in ordered:
+        nucleus = peak_list.nucleus
+        always = build_solvent_guests(solvent, nucleus)
+        hiding = np.array([g.shift for s in always for g in s.guests if g.hides])
+        out[nucleus] = PreparedPeaks(
+            peak_list,
+            lines[nucleus],
+            always,
+            impurities[nucleus],
+            (frequency,) if frequency else COMMON_CARBON_FREQUENCIES,
+            hiding if len(hiding) else None,
+        )
+    return out

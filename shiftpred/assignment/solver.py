@@ -201,9 +201,7 @@ def _swap_counts(place, count, sums, users, penalty, m):
     n = len(place)
     difference = count[None, :] - count[:, None]  # what the first unit's place gains
     padded = np.concatenate([sums, [0.0]])
-    stated = CountPenalty(
-        np.concatenate([penalty.stated, [np.nan]]), penalty.per_nucleus, penalty.tolerance, penalty.most
-    )
+    stated = CountPenalty(np.concatenate([penalty.stated, [np.nan]]), penalty.per_nucleus, penalty.tolerance, penalty.most)
     before = stated.compute(padded)[place]
     first = stated.compute((padded[place][:, None] + difference), np.repeat(place[:, None], n, axis=1)) - before[:, None]
     second = stated.compute((padded[place][None, :] - difference), np.repeat(place[None, :], n, axis=0)) - before[None, :]

@@ -71,7 +71,5 @@ def _gather_other_nucleus(prediction: MoleculePrediction, nucleus: str) -> dict[
     floor = PARAMETERS[nucleus].smallest_scale_ppm
     for row in prediction.nuclei:
         if row.nucleus == nucleus:
-            found.setdefault(row.atom_index, []).append(
-                (row.shift_ppm, max(row.scale_ppm, floor), row.degrees_of_freedom)
-            )
+            found.setdefault(row.atom_index, []).append((row.shift_ppm, max(row.scale_ppm, floor), row.degrees_of_freedom))
     return {i: tuple(np.array(values).T) for i, values in found.items()}

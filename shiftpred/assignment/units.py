@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from shiftpred.assignment.couplings import ExpectedCoupling, compute_expected_couplings
+from shiftpred.assignment.fast_exchange import find_exchanging_atoms
 from shiftpred.assignment.missing_chances import compute_carbon_chance, compute_hydrogen_chance
 from shiftpred.assignment.parameters import PARAMETERS
 from shiftpred.records import MoleculePrediction, NucleusPrediction
@@ -17,6 +18,7 @@ _DEUTERIUM_SHIFT_PPM = -0.3
 """Isotope shift of a carbon for each deuterium on it (from memory)."""
 _GEMINAL_TOGETHER = 0.5
 _DIASTEREOTOPIC_TOGETHER = 0.45
+_EXCHANGING_TOGETHER = 0.85
 """Chance that two groups which need not give one line do so all the same (common practice, no source)."""
 
 
@@ -97,6 +99,8 @@ def build_units(prediction: MoleculePrediction, nucleus: str) -> Units:
             neighbours[k] = _count_vicinal(mol, sites, row)
         notes.append(note)
         partner[k], together[k] = _find_partner(rows, place, sites, k)
+    for atoms in find_exchanging_atoms(mol):
+        _average_exchanging(rows, atoms, shift, together, partner, notes)
     return Units(
         nucleus=nucleus,
         rows=tuple(rows),
@@ -129,6 +133,17 @@ def _find_partner(rows, place, sites, k):
         if 0 <= first < k:
             return first, _DIASTEREOTOPIC_TOGETHER
     return -1, 0.0
+
+
+def _average_exchanging(rows, atoms, shift, together, partner, notes):
+    """Give units that exchange quickly their common mean and let them share one line."""
+    members = [k for k, row in enumerate(rows) if row.atom_index in atoms]
+    if len(members) < 2:
+        return
+    shift[members] = shift[members].mean()
+    for k in members[1:]:
+        partner[k], together[k] = members[0], _EXCHANGING_TOGETHER
+        notes[k] = notes[k] or "fast N-H exchange: one line with its partner"
 
 
 def _count_vicinal(mol, sites, row):
