@@ -26,15 +26,15 @@ def test_codes_tell_rare_elements_apart():
 
 
 def test_shells_reach_one_and_two_bonds():
-    propyl, pentyl = codes("CCCO"), codes("CCCCCO")
-    assert propyl[0, 0] == pentyl[0, 0] and propyl[0, 1] != pentyl[0, 1]
+    linear, branched = codes("CCCO"), codes("CCC(C)O")
+    assert linear[0, 0] == branched[0, 0] and linear[0, 1] != branched[0, 1]
 
 
 def test_levels():
     seen = codes("CCCO")
     table = NoveltyTable(np.unique(seen[:, 0]), np.unique(seen[:, 1]))
     assert set(table.compute_levels(codes("OCCC"))) == {FAMILIAR}
-    other = table.compute_levels(codes("CCCCCO"))
+    other = table.compute_levels(codes("CCC(C)O"))
     assert other[0] == NEW_SURROUNDINGS
     assert set(table.compute_levels(codes("C[Se]C"))) == {NEW_NEIGHBOURS}
 

@@ -11,8 +11,7 @@ PACKAGE = Path(__file__).resolve().parents[2] / "shiftpred"
 ORDER = ["structures", "substituents", "electronics", "features", "regression", "calibration", "bundles", "predicting", "peaks",
          "assignment", "judgement", "pipeline", "reporting", "triage", "training", "cli"]
 # Rooms that stand beside the way: a table of trade names and constants that both neighbours read.
-ALLOWED_BACK = {("substituents", "electronics"), ("structures", "substituents"), ("records", "reporting"),
-                ("triage", "pipeline"), ("regression", "bundles")}
+ALLOWED_BACK = {("substituents", "electronics"), ("structures", "substituents"), ("pipeline", "reporting")}
 
 
 def room(path: Path) -> str:
