@@ -3,6 +3,22 @@
 from importlib import import_module
 
 _HOME = {
+    "SourcedConstant": "shiftpred.electronics.constants",
+    "compute_allen": "shiftpred.electronics.elements",
+    "compute_allred_rochow": "shiftpred.electronics.elements",
+    "compute_mulliken_absolute": "shiftpred.electronics.elements",
+    "compute_mulliken_pauling_units": "shiftpred.electronics.elements",
+    "compute_pauling_difference": "shiftpred.electronics.elements",
+    "compute_sanderson_ratio": "shiftpred.electronics.elements",
+    "compute_slater_effective_charge": "shiftpred.electronics.elements",
+    "element_scales": "shiftpred.electronics.elements",
+    "compute_charged_electronegativity": "shiftpred.electronics.orbital_electronegativity",
+    "compute_hinze_jaffe": "shiftpred.electronics.orbital_electronegativity",
+    "compute_mullay": "shiftpred.electronics.orbital_electronegativity",
+    "SubstituentConstants": "shiftpred.electronics.substituent_constants",
+    "UndefinedConstant": "shiftpred.electronics.substituent_constants",
+    "render_substituent_text": "shiftpred.electronics.substituent_constants",
+    "substituent": "shiftpred.electronics.substituent_constants",
     "GroupVector": "shiftpred.electronics.vector",
     "group_vector": "shiftpred.electronics.vector",
 }

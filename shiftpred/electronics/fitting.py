@@ -22,7 +22,7 @@ _SCALES = {"sigma_I": 1.0, "sigma_star": 1 / 6.23, "F": 1.0}
 """sigma* = 6.23 sigma_I: Taft & Lewis, J. Am. Chem. Soc. 1958, 80, 2436 (from memory)."""
 _WEIGHTS = {"sigma_I": 1.0, "sigma_star": 1.0, "F": 0.5}
 _RIDGE_COMMON, _RIDGE_SCALE, _RIDGE_CONSTANT = 0.01, 0.1, 0.001
-_RIDGE_RESONANCE = 0.3
+_RIDGE_RESONANCE = 0.1
 
 
 @dataclass(frozen=True)

@@ -159,4 +159,6 @@ def compute_group_mullay(group: GroupGraph) -> float:
     for j, n in around:
         other = _hybrid_pauling(group, j)
         charge += n * (other - own) / (1.5 * (other + own))
-    return compute_mullay(own, (charge + group.charges[here]) / valence)
+    # Formal charges within a neutral group (nitro) are an artefact of drawing it with two-electron bonds.
+    charge += group.charges[here] if group.charge else 0.0
+    return compute_mullay(own, charge / valence)

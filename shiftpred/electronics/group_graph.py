@@ -7,7 +7,7 @@ equalisation counts them; everything is plain lists, so that tens of thousands o
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cached_property, lru_cache
 
 from rdkit import Chem, rdBase
 
@@ -21,6 +21,7 @@ _ORDERS = {
     Chem.BondType.TRIPLE: 3.0,
     Chem.BondType.AROMATIC: 1.5,
 }
+_NON_METALS = frozenset("H B C N O F Ne Si P S Cl Ar Ge As Se Br Kr Sb Te I Xe He".split())
 _LOOK = "one group with one '*' at its point of attachment, such as '*OC(C)=O'"
 
 
@@ -29,7 +30,7 @@ class GroupGraph:
     """A group as lists over its atoms, hydrogens last; the point of attachment itself is not among them."""
 
     smiles: str
-    """Canonical SMILES with one `*`."""
+    """Canonical SMILES with one `*`, without isotopes, stereo and atom maps."""
     attached: int
     """Index of the attached atom (of the first one, where the point has several bonds)."""
     attached_order: float
@@ -56,11 +57,16 @@ class GroupGraph:
         return round(sum(self.charges))
 
     @property
+    def metals(self) -> tuple[str, ...]:
+        """Symbols of the metal atoms, sorted."""
+        return tuple(sorted(set(self.symbols) - _NON_METALS))
+
+    @cached_property
     def depths(self) -> tuple[int, ...]:
         """Bonds from the attached atom."""
         return tuple(len(path) - 1 for path in self.paths)
 
-    @property
+    @cached_property
     def paths(self) -> tuple[tuple[int, ...], ...]:
         """Shortest path from the attached atom to each atom, both included."""
         found: dict[int, tuple[int, ...]] = {self.attached: (self.attached,)}
@@ -154,7 +160,7 @@ def _build(mol: Chem.Mol, point: Chem.Atom) -> GroupGraph:
     first = min((index[n.GetIdx()] for n in point.GetNeighbors()), default=0)
     order = _ORDERS.get(mol.GetBondBetweenAtoms(start, heavy[first].GetIdx()).GetBondType(), 1.0)
     return GroupGraph(
-        smiles=Chem.MolToSmiles(Chem.RemoveHs(mol)) if len(symbols) > 1 else Chem.MolToSmiles(mol),
+        smiles=_canonical(mol, hydrogen=len(symbols) == 1),
         attached=first,
         attached_order=order,
         points=point.GetDegree(),
@@ -170,6 +176,16 @@ def _build(mol: Chem.Mol, point: Chem.Atom) -> GroupGraph:
     )
 
 
+def _canonical(mol: Chem.Mol, hydrogen: bool) -> str:
+    """Canonical SMILES; isotopes, stereo and atom maps change no constant here."""
+    with rdBase.BlockLogs():
+        mol = Chem.Mol(mol) if hydrogen else Chem.RemoveHs(mol)
+    for atom in mol.GetAtoms():
+        if atom.GetAtomMapNum():
+            atom.SetAtomMapNum(0)
+    return Chem.MolToSmiles(mol, isomericSmiles=False)
+
+
 def _hybrid(symbol: str, pi: float, aromatic: bool, degree: int) -> str:
     if symbol == "H":
         return "s"
@@ -180,7 +196,7 @@ def _hybrid(symbol: str, pi: float, aromatic: bool, degree: int) -> str:
 
 def _share_charges(symbols, charges, hybrids, neighbours) -> None:
     """Let the equivalent oxygens of nitro, carboxylate and sulfonate share their formal charge and hybridisation."""
-    for centre, around in enumerate(neighbours):
+    for around in neighbours:
         ends = [j for j, _ in around if symbols[j] in ("O", "S") and len(neighbours[j]) == 1]
         for symbol in ("O", "S"):
             same = [j for j in ends if symbols[j] == symbol]

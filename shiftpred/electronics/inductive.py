@@ -8,7 +8,7 @@ is fitted to published constants (see `fitting`); a kind outside the fit takes C
 from __future__ import annotations
 
 from functools import lru_cache
-from math import cos, isnan, nan, pi, radians, sin
+from math import cos, nan, pi, radians, sin
 
 from shiftpred.electronics.atom_types import compute_atom_type
 from shiftpred.electronics.group_graph import GroupGraph
@@ -81,11 +81,11 @@ def compute_topological(group: GroupGraph, quantity: str) -> float:
     Returns
     -------
     float
-        Dimensionless; nan for a charged group and for elements without radius or electronegativity.
+        Dimensionless; nan for a charged group, a radical, a metal outside the fit and for elements without radius or electronegativity.
     """
-    if group.charge or group.radicals:
-        return nan
     parameters = _parameters(quantity)
+    if group.charge or group.radicals or any(metal not in parameters for metal in group.metals):
+        return nan
     total = parameters["constant"]
     for (kind, symbol), inverse in compute_inverse_square_sums(group).items():
         own = parameters.get(kind)
@@ -97,8 +97,7 @@ def _find(group: GroupGraph, quantity: str) -> float:
     published = find_published_median(group.smiles, quantity)
     if published is not None:
         return published
-    value = compute_topological(group, quantity)
-    return nan if isnan(value) else value
+    return compute_topological(group, quantity)
 
 
 def find_sigma_i(group: GroupGraph) -> float:

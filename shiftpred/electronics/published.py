@@ -5,7 +5,8 @@ from __future__ import annotations
 from functools import lru_cache
 from statistics import median
 
-from shiftpred.electronics.group_graph import parse_group
+from rdkit import Chem, rdBase
+
 from shiftpred.electronics.sourced_tables import load_rows
 
 __all__ = ["find_published_median", "find_published_rows"]
@@ -19,9 +20,10 @@ def _load() -> dict[str, tuple[dict[str, str], ...]]:
     return {smiles: tuple(rows) for smiles, rows in found.items()}
 
 
-@lru_cache(maxsize=1000)
 def _canonical(smiles: str) -> str:
-    return parse_group(smiles).smiles
+    # Not by parse_group, which would build the whole graph: the first look-up of a process waits for this loop.
+    with rdBase.BlockLogs():
+        return Chem.MolToSmiles(Chem.MolFromSmiles(smiles))
 
 
 @lru_cache(maxsize=1)

@@ -23,25 +23,51 @@ _HALOGENS = ("F", "Cl", "Br", "I")
 def compute_resonance_terms(group: GroupGraph) -> dict[str, float]:
     """Return term → how often it occurs in the group."""
     here = group.attached
-    terms = {compute_atom_type(group, here): 1.0}
+    terms = {_attached_kind(group): 1.0}
+
+    def count(term: str, n: float = 1.0) -> None:
+        terms[term] = terms.get(term, 0.0) + n
+
     gives = group.symbols[here] in _LONE_PAIRS and group.hybrids[here] == "sp3" and not group.oxos[here]
     for j, order in group.neighbours[here]:
-        symbol, kind = group.symbols[j], compute_atom_type(group, j)
+        kind, symbol = compute_atom_type(group, j), group.symbols[j]
         if gives:
-            acceptor = kind in ("C=X", "C#N", "Nsp2+") or group.oxos[j]
-            term = "acceptor behind a lone pair" if acceptor else "aryl behind a lone pair" if kind == "Car" else None
-            term = term or ("carbon behind a lone pair" if symbol == "C" else None)
-        elif order == 1 and group.hybrids[here] in ("sp2", "sp3") and symbol in _HALOGENS:
-            term = f"halogen on {'pi' if group.hybrids[here] == 'sp2' else 'sigma'} atom"
-        elif order == 1 and symbol in ("O", "N", "S") and not group.charges[here]:
-            term = "lone pair behind"
-        elif order == 2 and symbol in ("O", "N"):
-            term = "double bond to O or N"
-        else:
-            term = "carbon behind" if symbol == "C" else None
-        if term:
-            terms[term] = terms.get(term, 0.0) + 1.0
-    return terms
+            if kind in ("C=X", "C#N", "Nsp2+") or group.oxos[j]:
+                count("acceptor behind a lone pair")
+            elif kind == "Car":
+                count("aryl behind a lone pair")
+            elif symbol == "C":
+                count("carbon behind a lone pair")
+                count("halogen on carbon behind a lone pair", _count_halogens(group, j))
+        elif order == 1 and symbol in _HALOGENS:
+            count(f"halogen on {'sp2' if group.hybrids[here] == 'sp2' else 'sp3'} atom")
+        elif order == 1 and symbol in ("O", "N", "S"):
+            count(f"lone pair behind {'sp2' if group.hybrids[here] == 'sp2' else 'sp3'} atom")
+        elif kind == "Car" and not group.aromatic[here]:
+            count("aryl behind")
+        elif order == 1 and symbol == "C":
+            count("carbon behind")
+            count("halogen on carbon behind", _count_halogens(group, j))
+    if group.aromatic[here]:
+        depths = group.depths
+        for j, symbol in enumerate(group.symbols):
+            if group.aromatic[j] and symbol == "N" and group.charges[j] == 0 and len(group.neighbours[j]) == 2:
+                count("aza nitrogen conjugated" if depths[j] % 2 else "aza nitrogen")
+    return {term: n for term, n in terms.items() if n}
+
+
+def _attached_kind(group: GroupGraph) -> str:
+    here = group.attached
+    kind = compute_atom_type(group, here)
+    if kind == "Nsp2":
+        double = [(group.symbols[j], group.hybrids[j]) for j, n in group.neighbours[here] if n == 2]
+        cumulated = any(hybrid == "sp" for _, hybrid in double)
+        return "N cumulated" if cumulated else f"N={double[0][0]}" if double else kind
+    return "Osp3" if kind == "OH" else kind
+
+
+def _count_halogens(group: GroupGraph, atom: int) -> int:
+    return sum(group.symbols[k] in _HALOGENS for k, _ in group.neighbours[atom])
 
 
 @lru_cache(maxsize=1)
@@ -58,7 +84,7 @@ def compute_resonance(group: GroupGraph) -> float:
         Dimensionless; nan for charged groups, several bonds to the site, and attached atoms outside the fit.
     """
     parameters, terms = _parameters(), compute_resonance_terms(group)
-    kind = compute_atom_type(group, group.attached)
+    kind = _attached_kind(group)
     if group.charge or group.radicals or group.attached_order != 1 or kind not in parameters:
         return nan
     return parameters["constant"] + sum(n * parameters.get(term, 0.0) for term, n in terms.items())

@@ -27,9 +27,9 @@ class GroupVector(NamedTuple):
     charge_attached: float
     """Charge of the attached atom on a methyl carbon (partial equalisation), units of the elementary charge."""
     sigma_i: float
-    """Inductive constant sigma_I: published, or by the topological model."""
+    """Inductive constant sigma_I: median of the published values, or by the topological model."""
     sigma_star: float
-    """Taft's sigma*: published, or by the topological model."""
+    """Taft's sigma*: median of the published values, or by the topological model."""
     sigma_r: float
     """Resonance constant R: published, or by the additive model."""
     size: float
@@ -48,7 +48,7 @@ def group_vector(canonical_group_smiles: str) -> GroupVector:
     Returns
     -------
     GroupVector
-        Charged groups have no sigma beyond the published ones, elements outside the tables no electronegativity: nan.
+        For '*=O' and its like the topological sums are carried over, which no table can check. Charged groups have no sigma beyond the published ones, elements outside the tables no electronegativity: nan.
 
     Raises
     ------
