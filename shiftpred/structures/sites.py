@@ -229,6 +229,8 @@ def _parted(i, j, atoms, neighbours, rank, distance, test):
         other = next((b.GetOtherAtom(atom) for b in atom.GetBonds() if b.GetBondType() == _DOUBLE), None)
         return other is not None and other.GetIdx() not in arms and _ends_differ(other, p, rank)
     rest = [rank[k] for k in neighbours[p] if k not in arms]
+    if rank[arms[0]] in rest:
+        return False  # three equal arms (tert-butyl): rotation makes them one
     hydrogens = test.hydrogens[p]
     if atom.GetHybridization() != _SP3 or len(rest) + hydrogens != 2 or hydrogens == 2:
         return False

@@ -37,6 +37,7 @@ def groups(smiles):
     ("methylcyclohexane: every CH2, C-4 too", "CC1CCCCC1", [[2, 6], [3, 5]], [2, 3, 4, 5, 6]),
     ("cis-1,4-dimethylcyclohexane", "C[C@H]1CC[C@@H](C)CC1", [[0, 5], [1, 4], [2, 3, 6, 7]], [2, 3, 6, 7]),
     ("neopentane", "CC(C)(C)C", [[0, 2, 3, 4]], []),
+    ("tert-butyl in a chiral molecule", "CC(C)(C)OC(=O)C(C)N", [[0, 2, 3]], []),
     ("p-xylene", "Cc1ccc(C)cc1", [[0, 5], [1, 4], [2, 3, 6, 7]], []),
     ("acetamide: NH2", "CC(N)=O", [], [2]),
     ("diethyl ether", "CCOCC", [[0, 4], [1, 3]], []),
