@@ -35,8 +35,8 @@ class GroupGraph:
     """Index of the attached atom (of the first one, where the point has several bonds)."""
     attached_order: float
     """Order of the bond to the site."""
-    points: int
-    """Bonds from the group to the site: 1, or 2 for a bridge such as '*1CC1'."""
+    starts: tuple[int, ...]
+    """Every attached atom: one, or two of a bridge such as '*1CC1'."""
     symbols: tuple[str, ...]
     hybrids: tuple[str, ...]
     """'s', 'sp3', 'sp2' or 'sp', by the multiple bonds as drawn; sulfonyl sulfur and phosphoryl phosphorus are sp3."""
@@ -63,20 +63,20 @@ class GroupGraph:
 
     @cached_property
     def depths(self) -> tuple[int, ...]:
-        """Bonds from the attached atom."""
+        """Bonds from the nearest attached atom."""
         return tuple(len(path) - 1 for path in self.paths)
 
     @cached_property
     def paths(self) -> tuple[tuple[int, ...], ...]:
-        """Shortest path from the attached atom to each atom, both included."""
-        found: dict[int, tuple[int, ...]] = {self.attached: (self.attached,)}
-        queue = [self.attached]
+        """Shortest path from an attached atom to each atom, both included."""
+        found: dict[int, tuple[int, ...]] = {start: (start,) for start in self.starts}
+        queue = list(self.starts)
         for here in queue:
             for there, _ in self.neighbours[here]:
                 if there not in found:
                     found[there] = (*found[here], there)
                     queue.append(there)
-        return tuple(found.get(i, ()) for i in range(len(self.symbols)))
+        return tuple(found[i] for i in range(len(self.symbols)))
 
 
 @lru_cache(maxsize=20_000)
@@ -123,6 +123,13 @@ def parse_group(smiles: str) -> GroupGraph:
             "exactly one '*', bonded to the group: constants belong to a group with one point of attachment",
             "marking only the atom that the group is attached to, '*C(=O)OC' say",
         )
+    if points[0].GetDegree() > 1 and not points[0].IsInRing():
+        raise NotApplicable(
+            where,
+            f"a '*' between {points[0].GetDegree()} groups",
+            "'*' at the end of one group",
+            "each of the groups by itself",
+        )
     return _build(mol, points[0])
 
 
@@ -157,13 +164,14 @@ def _build(mol: Chem.Mol, point: Chem.Atom) -> GroupGraph:
         neighbours[a].append((b, order))
         neighbours[b].append((a, order))
     _share_charges(symbols, charges, hybrids, neighbours)
-    first = min((index[n.GetIdx()] for n in point.GetNeighbors()), default=0)
+    starts = sorted(index[n.GetIdx()] for n in point.GetNeighbors())
+    first = starts[0]
     order = _ORDERS.get(mol.GetBondBetweenAtoms(start, heavy[first].GetIdx()).GetBondType(), 1.0)
     return GroupGraph(
         smiles=_canonical(mol, hydrogen=len(symbols) == 1),
         attached=first,
         attached_order=order,
-        points=point.GetDegree(),
+        starts=tuple(starts),
         symbols=tuple(symbols),
         hybrids=tuple(hybrids),
         oxos=tuple(oxos),
@@ -178,11 +186,12 @@ def _build(mol: Chem.Mol, point: Chem.Atom) -> GroupGraph:
 
 def _canonical(mol: Chem.Mol, hydrogen: bool) -> str:
     """Canonical SMILES; isotopes, stereo and atom maps change no constant here."""
-    with rdBase.BlockLogs():
-        mol = Chem.Mol(mol) if hydrogen else Chem.RemoveHs(mol)
+    mol = Chem.Mol(mol)
     for atom in mol.GetAtoms():
-        if atom.GetAtomMapNum():
-            atom.SetAtomMapNum(0)
+        atom.SetAtomMapNum(0)
+        atom.SetIsotope(0)
+    with rdBase.BlockLogs():
+        mol = mol if hydrogen else Chem.RemoveHs(mol)
     return Chem.MolToSmiles(mol, isomericSmiles=False)
 
 

@@ -81,7 +81,8 @@ def compute_topological(group: GroupGraph, quantity: str) -> float:
     Returns
     -------
     float
-        Dimensionless; nan for a charged group, a radical, a metal outside the fit and for elements without radius or electronegativity.
+        Dimensionless; nan for a charged group, a radical, a metal outside the fit, and for elements without radius or
+        electronegativity.
     """
     parameters = _parameters(quantity)
     if group.charge or group.radicals or any(metal not in parameters for metal in group.metals):

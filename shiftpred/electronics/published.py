@@ -12,10 +12,10 @@ from shiftpred.electronics.sourced_tables import load_rows
 __all__ = ["find_published_median", "find_published_rows"]
 
 
-@lru_cache(maxsize=1)
-def _load() -> dict[str, tuple[dict[str, str], ...]]:
+@lru_cache(maxsize=4)
+def _load(table: str) -> dict[str, tuple[dict[str, str], ...]]:
     found: dict[str, list[dict[str, str]]] = {}
-    for row in load_rows("substituent_constants"):
+    for row in load_rows(table):
         found.setdefault(_canonical(row["smiles"]), []).append(row)
     return {smiles: tuple(rows) for smiles, rows in found.items()}
 
@@ -29,26 +29,27 @@ def _canonical(smiles: str) -> str:
 @lru_cache(maxsize=1)
 def _medians() -> dict[tuple[str, str], float]:
     values: dict[tuple[str, str], list[float]] = {}
-    for smiles, rows in _load().items():
+    for smiles, rows in _load("substituent_constants").items():
         for row in rows:
             values.setdefault((smiles, row["parameter"]), []).append(float(row["value"]))
     return {key: median(found) for key, found in values.items()}
 
 
-def find_published_rows(smiles: str) -> tuple[dict[str, str], ...]:
+def find_published_rows(smiles: str, table: str = "substituent_constants") -> tuple[dict[str, str], ...]:
     """Return every published row of a group, best verified first.
 
     Parameters
     ----------
     smiles : str
         Canonical, as in `GroupGraph.smiles`.
+    table : {'substituent_constants', 'group_electronegativity'}
 
     Returns
     -------
     tuple of dict
-        Rows of `tables/substituent_constants.csv`; empty where no table has the group.
+        Rows of `tables/<table>.csv`; empty where no table has the group.
     """
-    return tuple(sorted(_load().get(smiles, ()), key=lambda row: row["verified"] != "transcription"))
+    return tuple(sorted(_load(table).get(smiles, ()), key=lambda row: row["verified"] != "transcription"))
 
 
 def find_published_median(smiles: str, parameter: str) -> float | None:

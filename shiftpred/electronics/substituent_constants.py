@@ -119,6 +119,8 @@ def substituent(smiles: str) -> SubstituentConstants:
     values, undefined = [], []
     for item in (*_compute_electronegativities(group), *_find_constants(group, rows, obstacle)):
         (undefined if isinstance(item, UndefinedConstant) else values).append(item)
+    names = list(dict.fromkeys(value.name for value in values))
+    values.sort(key=lambda value: names.index(value.name))  # stable: keeps the order within a name
     return SubstituentConstants(group.smiles, tuple(values), tuple(undefined))
 
 
@@ -186,7 +188,7 @@ def _compute_electronegativities(group: GroupGraph) -> Iterator[SourcedConstant 
             (
                 "partial equalisation on a methyl carbon",
                 "e",
-                "six rounds, parameters of Gasteiger & Marsili 1980 (from memory)",
+                "six rounds, Gasteiger & Marsili 1980 (parameters from memory)",
             ),
             lambda: methods.compute_partial_charges(group, on_carbon=True)[here],
         ),
@@ -206,19 +208,17 @@ def _missing(group: GroupGraph, scale: str) -> str:
 
 
 def _published_electronegativities(group: GroupGraph) -> Iterator[SourcedConstant]:
-    for row in load_rows("group_electronegativity"):
-        if row["smiles"] == group.smiles:
-            origin = "computed" if "applied here" in row["scale"] else "published"
-            yield SourcedConstant(
-                "group electronegativity",
-                row["scale"],
-                float(row["value"]),
-                row["unit"],
-                row["source"],
-                origin,
-                row["verified"],
-                row["note"],
-            )
+    for row in find_published_rows(group.smiles, "group_electronegativity"):
+        yield SourcedConstant(
+            "group electronegativity",
+            row["scale"],
+            float(row["value"]),
+            row["unit"],
+            row["source"],
+            "computed" if "applied here" in row["scale"] else "published",
+            row["verified"],
+            row["note"],
+        )
 
 
 def _find_constants(
@@ -244,7 +244,7 @@ def _find_constants(
         scale, source = _MODELS[name]
         if obstacle:
             reason = f"{obstacle}; only published values are given"
-        elif group.attached_order != 1 or group.points != 1:
+        elif group.attached_order != 1 or len(group.starts) != 1:
             reason = "sigma constants are defined for groups with one single bond to the site"
         else:
             value = compute_resonance(group) if name == "R" else compute_topological(group, name)

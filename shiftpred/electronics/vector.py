@@ -48,7 +48,8 @@ def group_vector(canonical_group_smiles: str) -> GroupVector:
     Returns
     -------
     GroupVector
-        For '*=O' and its like the topological sums are carried over, which no table can check. Charged groups have no sigma beyond the published ones, elements outside the tables no electronegativity: nan.
+        Of '*=O' and its like sigma is the topological sum carried over, which no table can check. Charged groups have no
+        sigma beyond the published ones, elements outside the tables no electronegativity: nan.
 
     Raises
     ------
