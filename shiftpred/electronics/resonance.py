@@ -62,7 +62,8 @@ def _attached_kind(group: GroupGraph) -> str:
     if kind == "Nsp2":
         double = [(group.symbols[j], group.hybrids[j]) for j, n in group.neighbours[here] if n == 2]
         cumulated = any(hybrid == "sp" for _, hybrid in double)
-        return "N cumulated" if cumulated else f"N={double[0][0]}" if double else kind
+        nitroso = any(symbol == "O" for symbol, _ in double)
+        return "N cumulated" if cumulated else "N=O" if nitroso else "N=X" if double else kind
     return "Osp3" if kind == "OH" else kind
 
 
