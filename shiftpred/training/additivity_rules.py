@@ -27,11 +27,7 @@ from rdkit import Chem
 from shiftpred.errors import SettingError, quote
 from shiftpred.training.additivity_tables import find_group_names, find_increment, load_bases, load_increments
 
-__all__ = [
-    "RULES",
-    "predict_by_rules",
-    "predict_with_rule",
-]
+__all__ = ["RULES", "choose_first_rule", "predict_by_rules", "predict_each_rule"]
 
 _SP2, _SP3 = Chem.HybridizationType.SP2, Chem.HybridizationType.SP3
 _DOUBLE = Chem.BondType.DOUBLE
@@ -312,33 +308,24 @@ gamma comes before the two that count alpha alone: on 600 CH2 of the training co
 0.19 ppm against Shoolery's 0.39."""
 
 
-def predict_with_rule(mol: Chem.Mol, nucleus: str, rule: str) -> np.ndarray:
-    """Estimate shifts with one rule alone.
+def predict_each_rule(mol: Chem.Mol) -> dict[str, dict[str, np.ndarray]]:
+    """Estimate shifts with every rule on its own.
 
     Parameters
     ----------
     mol : rdkit.Chem.Mol
         Sanitised, hydrogens implicit.
-    nucleus : {'13C', '1H'}
-    rule : str
-        A name in `RULES[nucleus]`.
 
     Returns
     -------
-    ndarray of shape (n_atoms,)
-        ppm; nan where the rule does not apply.
-
-    Raises
-    ------
-    SettingError
-        For another nucleus or rule.
+    dict
+        Nucleus → rule → (n_atoms,) ppm; nan where the rule does not apply.
     """
-    _require_nucleus(nucleus)
-    if rule not in RULES[nucleus]:
-        raise SettingError(
-            "argument 'rule'", quote(rule), f"one of {', '.join(RULES[nucleus])}", f"rule={next(iter(RULES[nucleus]))!r}"
-        )
-    return _predict(mol, nucleus, (rule,))
+    groups = _Groups(mol)
+    return {
+        nucleus: {name: np.array([_apply(rule, groups, i) for i in range(mol.GetNumAtoms())]) for name, rule in rules.items()}
+        for nucleus, rules in RULES.items()
+    }
 
 
 def predict_by_rules(mol: Chem.Mol, nucleus: str) -> np.ndarray:
@@ -366,24 +353,21 @@ def predict_by_rules(mol: Chem.Mol, nucleus: str) -> np.ndarray:
     >>> predict_by_rules(Chem.MolFromSmiles("CCCCC"), "13C").round(1)
     array([14. , 22.8, 34.7, 22.8, 14. ])
     """
-    _require_nucleus(nucleus)
-    return _predict(mol, nucleus, tuple(RULES[nucleus]))
+    if nucleus not in RULES:
+        raise SettingError("argument 'nucleus'", quote(nucleus), "'13C' or '1H'", "nucleus='13C'")
+    return choose_first_rule(predict_each_rule(mol)[nucleus])
 
 
-def _predict(mol, nucleus, rules):
-    groups = _Groups(mol)
-    out = np.full(mol.GetNumAtoms(), np.nan)
-    for i in range(len(out)):
-        if (groups.atoms[i].GetAtomicNum() != 6) or (nucleus == "1H" and not groups.hydrogens[i]):
-            continue
-        for rule in rules:
-            value = RULES[nucleus][rule](groups, i)
-            if value is not None:
-                out[i] = value
-                break
+def choose_first_rule(by_rule: dict[str, np.ndarray]) -> np.ndarray:
+    """Return, for each atom, the value of the first rule that has one; nan: none has."""
+    out = None
+    for values in by_rule.values():
+        out = values.copy() if out is None else np.where(np.isnan(out), values, out)
     return out
 
 
-def _require_nucleus(nucleus: str) -> None:
-    if nucleus not in RULES:
-        raise SettingError("argument 'nucleus'", quote(nucleus), "'13C' or '1H'", "nucleus='13C'")
+def _apply(rule, groups: _Groups, i: int) -> float:
+    if groups.atoms[i].GetAtomicNum() != 6:
+        return np.nan
+    value = rule(groups, i)
+    return np.nan if value is None else value
