@@ -71,8 +71,12 @@ def collect_calibration_sites(compounds: list[Compound], predicted: list[np.ndar
         known = ~np.isnan(y)
         if not known.any():
             continue
-        environments = compute_environments(compound.mol, nucleus)
+        environments = [str(e) for e in compute_environments(compound.mol, nucleus)]
         certain = find_certain_sites(placer, compound.mol, values, column)
+        if nucleus == "1H":
+            # A hydrogen whose carbon is certain is certain too: both carry one label.
+            on_carbon = placer.place(compound.c13[:, None], assignment)[:, 0]
+            certain |= find_certain_sites(placer, compound.mol, values, 0) & ~np.isnan(on_carbon)
         for i in np.flatnonzero(known):
             error, scale = float(y[i] - values[i, column]), float(values[i, 3 + column])
             rows.append((number, environments[i], abs(error) / scale, error, scale, certain[i], level[i]))

@@ -41,11 +41,11 @@ class NetworkSettings:
     hidden: int = 384
     passes: int = 45
     first_passes: int = 2
-    """Passes over the unambiguous peaks alone, before the first full assignment."""
-    batch: int = 128
-    learning_rate: float = 1.2e-3
+    """Passes on the first assignment (by the substituent model, or of the unambiguous peaks alone)."""
+    batch: int = 48
+    learning_rate: float = 1.0e-3
     weight_decay: float = 1e-3
-    averaging: float = 0.9985
+    averaging: float = 0.999
     random_seed: int = 7
     label_order: float = 0.3
     """Worth of a bond between consecutive labels when peaks are assigned (see `PeakPlacer.assign`), from the middle on."""
@@ -87,6 +87,7 @@ def train_environment_model(
     report=print,
     starting_weights: dict | None = None,
     graphs: list[MoleculeArrays] | None = None,
+    first_predictions: list[np.ndarray] | None = None,
 ) -> EnvironmentNetwork:
     """Train, leaving a checkpoint in `folder` after every pass; a run that was stopped goes on from it.
 
@@ -104,6 +105,9 @@ def train_environment_model(
         State of a network of the same size to start from (training on top of a model).
     graphs : list of MoleculeArrays, optional
         Of the compounds, where they have been made already.
+    first_predictions : list of ndarray of shape (n_atoms, 2), optional
+        13C and 1H shifts (ppm; nan: none) of every compound by another model, for the first assignment; without them it is
+        confined to the peaks that are unambiguous by hydrogen count.
 
     Returns
     -------
@@ -116,7 +120,7 @@ def train_environment_model(
         graphs = build_graphs(compounds, settings)
     chosen = [i for i, c in enumerate(compounds) if c.split in ("train", "calibration")]
     job = _Job([compounds[i] for i in chosen], [graphs[i] for i in chosen], settings, folder, processes, report,
-               starting_weights, _free_port())
+               starting_weights, _free_port(), [first_predictions[i] for i in chosen] if first_predictions else None)
     torch.set_num_threads(1)
     if processes == 1:
         _work(0, job)
@@ -138,6 +142,7 @@ class _Job:
     report: object
     starting_weights: dict | None
     port: int
+    first_predictions: list | None
 
 
 def _free_port() -> int:
@@ -182,7 +187,9 @@ def _work(rank: int, job: _Job) -> None:
         begun = time.time()
         start = number < settings.first_passes and job.starting_weights is None
         errors: dict[str, float] = {}
-        if start:
+        if start and job.first_predictions is not None:
+            fresh = [p.assign(v) for p, v in zip(placers, job.first_predictions)]
+        elif start:
             fresh = [p.assign_unambiguous() for p in placers]
         else:
             model = network if number <= settings.first_passes else average

@@ -20,10 +20,13 @@ from shiftpred.bundles import load_bundle, save_bundle
 from shiftpred.bundles.locations import find_datasets
 from shiftpred.calibration.novelty import NoveltyTable
 from shiftpred.errors import InputError, SettingError
+from shiftpred.features.molecule_arrays import join_molecule_arrays
+from shiftpred.features.solvents import SOLVENTS
 from shiftpred.regression.environment_model import EnvironmentModel
+from shiftpred.regression.explanation_parts import compute_residual_scale
 from shiftpred.training.assign_open_peaks import PeakPlacer
 from shiftpred.training.fit_calibration import build_novelty_arrays, fit_calibration
-from shiftpred.training.fit_substituent_model import fit_substituent_model
+from shiftpred.training.fit_substituent_model import fit_substituent_model, fit_to_peak_lists
 from shiftpred.training.network import build_state, export_arrays
 from shiftpred.training.open_tables import Compound, connectivity, load_open_tables
 from shiftpred.training.train_environment_model import (
@@ -34,7 +37,7 @@ from shiftpred.training.train_environment_model import (
     train_environment_model,
 )
 
-__all__ = ["load_measured_connectivities", "predict_with_arrays", "train_model"]
+__all__ = ["build_bundle", "load_measured_connectivities", "predict_with_arrays", "train_model"]
 
 _FEWEST_COMPOUNDS = 50
 
@@ -95,26 +98,15 @@ def train_model(
         settings = replace(settings, **_sizes(base.environment_model.arrays))
         before = _evaluate(compounds, graphs, held_out, base.environment_model.arrays)
         report(f"held out, before: {json.dumps(before)}")
-    network = train_environment_model(compounds, settings, working, processes, report, starting, graphs)
+    report("substituent model")
+    chosen = [i for i, c in enumerate(compounds) if c.split == "train"]
+    some = np.random.default_rng(settings.random_seed).permutation(chosen)[:substituent_compounds]
+    substituent_model, _ = fit_to_peak_lists([compounds[i] for i in some], log=report)
+    first = None if start_from else [_predict_substituents(substituent_model, c.mol) for c in _progress(compounds)]
+    network = train_environment_model(compounds, settings, working, processes, report, starting, graphs, first)
     arrays = export_arrays(network)
     after = _evaluate(compounds, graphs, held_out, arrays)
     report(f"held out, after: {json.dumps(after)}")
-    predicted = predict_with_arrays(arrays, graphs)
-    chosen = [i for i, c in enumerate(compounds) if c.split == "train"]
-    novelty_arrays = build_novelty_arrays([graphs[i] for i in chosen])
-    calibration_set = [i for i, c in enumerate(compounds) if c.split == "calibration"]
-    report("calibrating")
-    intervals = fit_calibration(
-        [compounds[i] for i in calibration_set], [graphs[i] for i in calibration_set],
-        [predicted[i] for i in calibration_set], NoveltyTable(**novelty_arrays),
-    )
-    report("fitting the substituent model")
-    some = np.random.default_rng(settings.random_seed).permutation(chosen)[:substituent_compounds]
-    substituent_model = fit_substituent_model(
-        [compounds[i].mol for i in some], [_place(compounds[i], predicted[i]) for i in some]
-    )
-    substituent_arrays, substituent_meta = substituent_model.to_arrays()
-    set_aside = _list_set_aside([compounds[i] for i in chosen], [predicted[i] for i in chosen])
     log = (working / "rounds.jsonl").read_text(encoding="utf-8")
     origin = dict(
         tables={p.name: hashlib.sha256(p.read_bytes()).hexdigest() for p in sorted(tables.glob("*.csv*"))},
@@ -122,13 +114,83 @@ def train_model(
         versions={p: version(p) for p in ("numpy", "rdkit", "scikit-learn", "torch")} | {"python": platform.python_version()},
         minutes=round((time.time() - begun) / 60, 1), held_out=dict(before=before, after=after),
     )
+    build_bundle(output, compounds, graphs, arrays, origin, log, substituent_compounds, report)
+    report(f"written to {output} after {(time.time() - begun) / 60:.0f} min")
+    return dict(before=before, after=after)
+
+
+def build_bundle(
+    output: Path, compounds: list[Compound], graphs, arrays: dict[str, np.ndarray], origin: dict, log: str,
+    substituent_compounds: int = 12000, report: Callable[[str], None] = print,
+) -> None:
+    """Calibrate a trained network, fit the substituent model to its assignments, and write the model folder.
+
+    Parameters
+    ----------
+    output : path
+    compounds : list of Compound
+    graphs : list of MoleculeArrays
+        Of the compounds.
+    arrays : dict of str to ndarray
+        The network's weights from `export_arrays`.
+    origin : dict
+        JSON-ready; `settings.random_seed` is used.
+    log : str
+        The rounds of assignment, one JSON object a line.
+    substituent_compounds : int
+        Compounds that the substituent model is fitted to.
+    report : callable
+    """
+    train = [i for i, c in enumerate(compounds) if c.split == "train"]
+    calibration = [i for i, c in enumerate(compounds) if c.split == "calibration"]
+    predicted = dict(zip(train + calibration, predict_with_arrays(arrays, [graphs[i] for i in train + calibration])))
+    report("calibrating intervals")
+    novelty_arrays = build_novelty_arrays([graphs[i] for i in train])
+    intervals = fit_calibration(
+        [compounds[i] for i in calibration], [graphs[i] for i in calibration], [predicted[i] for i in calibration],
+        NoveltyTable(**novelty_arrays),
+    )
+    report("fitting the substituent model to the network's assignments")
+    some = np.random.default_rng(origin["settings"]["random_seed"]).permutation(train)[:substituent_compounds]
+    model = fit_substituent_model(
+        [compounds[i].mol for i in some], [_place(compounds[i], predicted[i]) for i in some],
+        solvents=[_only_solvent(compounds[i]) for i in some],
+    )
+    scale = compute_residual_scale(model, [compounds[i].mol for i in calibration], [_mask(compounds[i], predicted[i]) for i in calibration])
+    for nucleus, table in scale.items():
+        model.set_residual_scale(nucleus, table)
+    substituent_arrays, substituent_meta = model.to_arrays()
+    set_aside = _list_set_aside([compounds[i] for i in train], [predicted[i] for i in train])
     save_bundle(
         output, name=output.name, edition=time.strftime("%Y.%m.%d"), network_arrays=arrays, novelty_arrays=novelty_arrays,
         calibration=dict(intervals=intervals), substituent_arrays=substituent_arrays, substituent_meta=substituent_meta,
         origin=origin, texts={"rounds.jsonl": log, "set_aside.csv": set_aside},
     )
-    report(f"written to {output} after {(time.time() - begun) / 60:.0f} min")
-    return dict(before=before, after=after)
+
+
+def _predict_substituents(model, mol) -> np.ndarray:
+    return np.stack([model.predict(mol, "13C"), model.predict(mol, "1H")], axis=1)
+
+
+def _only_solvent(compound: Compound) -> str | None:
+    """Return the compound's solvent where all its peaks were measured in one that is known."""
+    names = {SOLVENTS[k] for k, _ in compound.samples}
+    return names.pop() or None if len(names) == 1 else None
+
+
+def _mask(compound: Compound, predicted: np.ndarray) -> np.ndarray:
+    """Return (n_atoms, 2) predicted shifts with nan where the atom has no such nucleus."""
+    out = predicted[:, :2].copy()
+    for atom in compound.mol.GetAtoms():
+        if atom.GetAtomicNum() != 6:
+            out[atom.GetIdx(), 0] = np.nan
+        if atom.GetTotalNumHs() == 0:
+            out[atom.GetIdx(), 1] = np.nan
+    return out
+
+
+def _progress(items):
+    return tqdm(items, desc="first assignment", leave=False, disable=not sys.stderr.isatty())
 
 
 def load_measured_connectivities() -> frozenset[str]:
@@ -146,8 +208,6 @@ def load_measured_connectivities() -> frozenset[str]:
 
 def predict_with_arrays(arrays: dict[str, np.ndarray], graphs, solvent: int = 0, batch: int = 64) -> list[np.ndarray]:
     """Predict as the shipped model does: (n_atoms, 5) 13C, 1H, half gap, raw scales of 13C and 1H for every graph, ppm."""
-    from shiftpred.features.molecule_arrays import join_molecule_arrays
-
     model, out = EnvironmentModel(arrays), []
     for begin in tqdm(range(0, len(graphs), batch), desc="predict", leave=False, disable=not sys.stderr.isatty()):
         joined, offsets = join_molecule_arrays(graphs[begin : begin + batch])
