@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from shiftpred.assignment.nucleus_fit import NucleusFit
+from shiftpred.assignment.second_set import find_second_set_reason
 from shiftpred.assignment.structure_fit import StructureFit
 from shiftpred.records import Assignment, Balance, Missing, NucleusPrediction, Unexplained
 
@@ -105,10 +106,13 @@ def _build_notes(nucleus_fit, k, column, shared, deviation) -> list[str]:
 def _find_interchangeable(nucleus_fit, k, column) -> tuple[int, ...]:
     """Return the user's numbers of atoms of other units that could as well have this line."""
     units, n = nucleus_fit.units, len(nucleus_fit.units)
-    likely = np.flatnonzero(nucleus_fit.probability[:n, column] >= _INTERCHANGEABLE_FROM)
+    likely = set(np.flatnonzero(nucleus_fit.probability[:n, column] >= _INTERCHANGEABLE_FROM).tolist())
+    if units.labile[k]:
+        # Their places are not predictable, so any two labile hydrogens may have each other's lines.
+        likely |= set(np.flatnonzero(units.labile & (nucleus_fit.chosen[:n] >= 0)).tolist())
     own = set(units.rows[k].equivalent_atoms)
     numbers: list[int] = []
-    for i in likely:
+    for i in sorted(likely):
         if i != k and not _on_column(nucleus_fit, i, column):
             numbers += [a for a in units.rows[i].equivalent_atoms if a not in own and a not in numbers]
     return tuple(sorted(numbers))
@@ -129,7 +133,11 @@ def build_unexplained(fit: StructureFit) -> tuple[Unexplained, ...]:
                 line = nucleus_fit.columns[column].lines[0]
                 found.append((line, guest.name, ""))
         found += [(line, None, "") for line in nucleus_fit.leftover]
-        for line, likely, note in sorted(found):
+        for line, k in nucleus_fit.second_set:
+            row = nucleus_fit.units.rows[k]
+            reason = find_second_set_reason(nucleus_fit.units.mol)
+            found.append((line, f"second set: {reason}", f"beside the line of atom {row.atom}{row.hydrogen}"))
+        for line, likely, note in sorted(found, key=lambda f: f[0]):
             out.append(Unexplained(nucleus, float(nucleus_fit.lines.shift[line]), likely, note))
     return tuple(out)
 

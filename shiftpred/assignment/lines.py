@@ -41,6 +41,8 @@ class Lines:
     """(m,) shift of the other nucleus of a C-H pair; nan: not stated."""
     extra: np.ndarray
     """(m,) log weight of being a line of unknown origin."""
+    is_split: np.ndarray
+    """(m,) bool: 13C lines that come with a splitting."""
     split_stated: bool
     """True where any line comes with a splitting, so that a line without one is a singlet."""
 
@@ -91,6 +93,7 @@ def build_lines(peak_list: PeakList) -> Lines:
     if known.any():
         other = "1H" if nucleus == "13C" else "13C"
         extra[known] += np.log(compute_background_density(other, pair[known]))
+    is_split = np.array([nucleus == "13C" and bool(p.couplings_hz) for p in peaks], dtype=bool)
     return Lines(
         nucleus,
         peaks,
@@ -102,7 +105,8 @@ def build_lines(peak_list: PeakList) -> Lines:
         attached,
         pair,
         extra,
-        split_stated=nucleus == "13C" and any(p.couplings_hz for p in peaks),
+        is_split=is_split,
+        split_stated=bool(is_split.any()),
     )
 
 

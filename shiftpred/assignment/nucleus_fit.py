@@ -12,6 +12,7 @@ from shiftpred.assignment.lines import Lines, Offer, build_offers
 from shiftpred.assignment.offset import compute_offset
 from shiftpred.assignment.parameters import PARAMETERS
 from shiftpred.assignment.prepared_peaks import PreparedPeaks
+from shiftpred.assignment.second_set import assign_second_set, find_second_set_reason
 from shiftpred.assignment.soft import compute_soft_assignment
 from shiftpred.assignment.solver import CountPenalty, improve_with_counts, solve_assignment
 from shiftpred.assignment.units import Units
@@ -21,6 +22,8 @@ __all__ = ["NucleusFit", "assign_nucleus"]
 
 _NEVER = -60.0
 _MOST_IMPURITIES = 3
+_GUEST_ON_STATED = 2.0
+"""Log penalty of a solvent or impurity on a range, on a split line, or on one stated to hold several nuclei."""
 
 
 @dataclass(frozen=True)
@@ -45,6 +48,8 @@ class NucleusFit:
     """Log density of the list under the structure, summed over assignments."""
     leftover: tuple[int, ...]
     """Lines that nothing takes."""
+    second_set: tuple[tuple[int, int], ...]
+    """(line, unit): lines of a second, weaker set (rotamer, diastereomer, …); they are not among `leftover`."""
     impurities: tuple[str, ...]
     """Names of the coherent sets that were found."""
     missing_notes: tuple[str, ...]
@@ -153,7 +158,7 @@ def _build_problem(units, lines, offers, guests, offset, others, pair_share, pea
         scale = np.array([g.scale for g in guests])[:, None]
         degrees = np.array([g.degrees for g in guests])[:, None]
         foreign[:, :m] = compute_log_student((lines.shift[None, :] - offset - shift) / scale, scale, degrees)
-        foreign[:, :m] -= np.where(lines.is_range, 2.0, 0.0)[None, :]
+        foreign[:, :m] -= _GUEST_ON_STATED * (lines.is_range | (lines.count > 1) | lines.is_split)[None, :]
         missing = np.concatenate([missing, [g.missing for g in guests]])
         together = np.concatenate([together, np.zeros(len(guests))])
     hidden = np.zeros(len(missing))
@@ -286,6 +291,17 @@ def _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, p
     sharing = _find_sharing(units, guests, problem, chosen, users, parameters)
     evidence += sum(s.log_prior for s in accepted) - 0.5 * (offset / parameters.reference_prior_ppm) ** 2 * (not anchored)
     leftover = tuple(j for c, o in enumerate(problem.columns) if users[c] == 0 for j in o.lines)
+    second = ()
+    if len(leftover) > 1 and find_second_set_reason(units.mol):
+        pairs, gain = assign_second_set(
+            units.nucleus,
+            lines.shift[list(leftover)],
+            lines.extra[list(leftover)],
+            _observed_shifts(problem, chosen, sharing, n),
+        )
+        second = tuple((leftover[i], k) for i, k in pairs)
+        evidence += gain
+        leftover = tuple(j for j in leftover if j not in {line for line, _ in second})
     terms = _compute_terms(units, problem, chosen, sharing, offset, n)
     terms["extra_lines"] = len(leftover)
     terms["lines"] = m
@@ -301,6 +317,7 @@ def _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, p
         anchored,
         float(evidence),
         tuple(sorted(leftover)),
+        second,
         tuple(s.name for s in accepted),
         _explain_missing(units, peaks),
         terms,
@@ -335,6 +352,11 @@ def _soften_counted(problem, chosen, resolution):
         + np.where(users == 0, problem.leftover, penalty.compute(sums) + (users - 1) * np.log(resolution)).sum()
     )
     return np.minimum(probability, 1.0), exact + max(0.0, log_sum - hard)
+
+
+def _observed_shifts(problem, chosen, sharing, n) -> np.ndarray:
+    column = np.where(chosen >= 0, chosen, sharing)[:n]
+    return np.array([problem.columns[c].centre_ppm if c >= 0 else np.nan for c in column], dtype=float)
 
 
 def _explain_missing(units, peaks) -> tuple[str, ...]:
@@ -387,9 +409,8 @@ def _is_near(problem, k, column) -> bool:
 
 def _compute_terms(units, problem, chosen, sharing, offset, n):
     """Parts of the fit that the judgement looks at."""
-    column = np.where(chosen >= 0, chosen, sharing)[:n]
-    has = column >= 0
-    centre = np.array([problem.columns[c].centre_ppm if c >= 0 else np.nan for c in column], dtype=float)
+    centre = _observed_shifts(problem, chosen, sharing, n)
+    has = ~np.isnan(centre)
     z = np.zeros(n)
     z[has] = (centre[has] - offset - units.shift[has]) / units.scale[has]
     missing = [k for k in range(n) if not has[k]]

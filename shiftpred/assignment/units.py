@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from rdkit import Chem
 
 from shiftpred.assignment.couplings import ExpectedCoupling, compute_expected_couplings
 from shiftpred.assignment.fast_exchange import find_exchanging_atoms
@@ -27,6 +28,7 @@ class Units:
     """The nuclei of one kind in one structure, by sets of equivalent ones; n units."""
 
     nucleus: str
+    mol: Chem.Mol
     rows: tuple[NucleusPrediction, ...]
     """(n,) the predicted row that stands for the unit."""
     atoms: tuple[tuple[int, ...], ...]
@@ -103,6 +105,7 @@ def build_units(prediction: MoleculePrediction, nucleus: str) -> Units:
         _average_exchanging(rows, atoms, shift, together, partner, notes)
     return Units(
         nucleus=nucleus,
+        mol=mol,
         rows=tuple(rows),
         atoms=tuple(sites[r.atom_index].equivalent for r in rows),
         count=count,
