@@ -10,10 +10,10 @@ from collections.abc import Iterable, Iterator
 from shiftpred.bundles import ModelBundle, load_bundle, load_default_bundle
 from shiftpred.peaks.solvents import normalise_solvent
 from shiftpred.predicting import predict_molecules, select_nucleus
-from shiftpred.records import Explanation, MoleculePrediction, RecordFailure, Structure
+from shiftpred.records import Comparison, Explanation, MoleculePrediction, Ranking, RecordFailure, Structure
 from shiftpred.structures.reading import parse_structure, parse_structures
 
-__all__ = ["explain", "iterate_predictions", "load_model", "predict", "predict_structures"]
+__all__ = ["compare", "explain", "iterate_predictions", "load_model", "predict", "predict_structures", "rank", "rank_structures"]
 
 
 def load_model(model: ModelBundle | str | None = None) -> ModelBundle:
@@ -121,3 +121,119 @@ def explain(
         read, nucleus, chosen.atom_index, chosen.atom, shift, chosen.lower_ppm, chosen.upper_ppm, coverage, parts, bundle.edition,
         read.notes,
     )
+
+
+def compare(structure, c13=None, h1=None, solvent: str | None = None, model=None, **settings) -> Comparison:
+    """Judge whether measured peaks bear a structure out.
+
+    Parameters
+    ----------
+    structure : str, path, rdkit Mol or Structure
+    c13, h1 : str, path, iterable of numbers, PeakList or None
+        Plain numbers, journal text or a file; None: not measured.
+    solvent : str, optional
+        Any common spelling; None: the one that a list's heading states, if any.
+    model : str or ModelBundle, optional
+        Folder of a trained model; default the shipped one.
+    **settings
+        `coverage`, `frequency_mhz`, `rivals`, `mass_confirmed`, `prior`, `expected` (see `shiftpred.records.Settings`).
+
+    Returns
+    -------
+    Comparison
+        A prediction is evidence, not proof of identity; see its `cautions`.
+
+    Raises
+    ------
+    InputError, SettingError
+        If the structure or a peak list cannot be read, or a setting is outside what is accepted.
+
+    Examples
+    --------
+    >>> import shiftpred
+    >>> found = shiftpred.compare("CCOC(=O)c1ccccc1", c13=[166.6, 132.8, 130.5, 129.5, 128.3, 60.9, 14.3], solvent="CDCl3")
+    >>> found.judgement
+    'supported'
+    """
+    from shiftpred.assignment import assign_structure
+    from shiftpred.judgement import (
+        build_comparison,
+        build_ionised_structures,
+        build_judgement_map,
+        build_settings,
+        choose_solvent,
+        read_sample,
+    )
+    from shiftpred.structures.rivals import build_rivals
+
+    bundle, asked = load_model(model), build_settings(solvent=solvent, **settings)
+    proposal, peaks = parse_structure(structure), read_sample(c13, h1, asked)
+    rivals = build_rivals(proposal, asked.rivals, asked.mass_confirmed)
+    forms = build_ionised_structures(proposal)
+    read = [proposal, *(parse_structure(r.smiles) for r in rivals), *(form for form, _ in forms)]
+    beside = [parse_structure(smiles) for smiles in asked.expected]
+    predictions = predict_structures([*read, *beside], "both", choose_solvent(peaks, asked), asked.coverage, bundle)
+    expected = tuple(predictions[len(read) :])
+    fits = [assign_structure(p, peaks, expected) for p in predictions[: len(read)]]
+    main, ionised = fits[: 1 + len(rivals)], [(fit, how) for fit, (_, how) in zip(fits[1 + len(rivals) :], forms)]
+    return build_comparison(proposal, asked, peaks, main, rivals, build_judgement_map(bundle.judgement), ionised)
+
+
+def rank_structures(structures, c13=None, h1=None, solvent: str | None = None, model=None, **settings) -> Ranking:
+    """Put candidate structures in order of how well they explain the peaks; a record that cannot be read is listed as failed.
+
+    Parameters
+    ----------
+    structures : iterable of str, path, rdkit Mol, Structure or RecordFailure, or a file of them
+    c13, h1, solvent, model, **settings
+        As for `compare`.
+
+    Returns
+    -------
+    Ranking
+        The same input always gives the same order; ties keep the order of the input.
+
+    Raises
+    ------
+    InputError, SettingError
+        As for `compare`; also if no candidate can be read.
+    """
+    from shiftpred.assignment import assign_structure
+    from shiftpred.judgement import (
+        build_judgement_map,
+        build_ranking,
+        build_settings,
+        choose_solvent,
+        read_sample,
+        require_candidates,
+    )
+
+    bundle, asked = load_model(model), build_settings(solvent=solvent, **settings)
+    peaks = read_sample(c13, h1, asked)
+    positions, read, failures = require_candidates(parse_structures(structures))
+    beside = [parse_structure(smiles) for smiles in asked.expected]
+    predictions = predict_structures([*read, *beside], "both", choose_solvent(peaks, asked), asked.coverage, bundle)
+    expected = tuple(predictions[len(read) :])
+    fits = [assign_structure(p, peaks, expected) for p in predictions[: len(read)]]
+    return build_ranking(asked, peaks, fits, positions, build_judgement_map(bundle.judgement), bundle.edition, failures)
+
+
+def rank(structures, c13=None, h1=None, solvent: str | None = None, model=None, **settings):
+    """Rank candidate structures (see `rank_structures`).
+
+    Returns
+    -------
+    pandas.DataFrame
+        Columns `candidate` (0-based input position), `probability`, `misfit` (minus the log likelihood); best first.
+
+    Examples
+    --------
+    >>> import shiftpred
+    >>> list(shiftpred.rank(["CCC(=O)Oc1ccccc1", "CCOC(=O)c1ccccc1"], c13=[166.6, 132.8, 130.5, 129.5, 128.3, 60.9, 14.3]).candidate)
+    [1, 0]
+    """
+    import pandas as pd
+
+    found = rank_structures(structures, c13, h1, solvent, model, **settings).candidates
+    return pd.DataFrame([dict(candidate=r.candidate, probability=r.probability, misfit=r.misfit) for r in found],
+                        columns=["candidate", "probability", "misfit"])

@@ -60,7 +60,14 @@ def list_differing_lines(proposal: StructureFit, rival: StructureFit) -> list[tu
                 weight = abs(a[1] - b[1])
             found.append((weight, nucleus, (float(observed), float(a[0]), float(b[0]))))
     found.sort(key=lambda f: (-round(f[0], 6), f[1], f[2][0]))
-    return [(nucleus, entry) for _, nucleus, entry in found[:_MOST_LINES]]
+    seen, kept = set(), []
+    for _, nucleus, entry in found:
+        # The two lines of one split carbon tell the same thing.
+        key = (nucleus, str(entry[1]), str(entry[2]))
+        if key not in seen:
+            seen.add(key)
+            kept.append((nucleus, entry))
+    return kept[:_MOST_LINES]
 
 
 def _expected_by_line(fit: NucleusFit) -> dict[int, tuple[float, float]]:

@@ -6,6 +6,7 @@ from collections import Counter
 
 import numpy as np
 from rdkit import Chem
+from rdkit.Chem.rdMolDescriptors import CalcMolFormula
 
 from shiftpred.records import MoleculePrediction, NucleusPrediction
 
@@ -39,7 +40,7 @@ def propose_experiment(proposal: MoleculePrediction, rival: MoleculePrediction) 
 
 
 def _formula(prediction: MoleculePrediction) -> str:
-    return Chem.rdMolDescriptors.CalcMolFormula(prediction.structure.mol)
+    return CalcMolFormula(prediction.structure.mol)
 
 
 def _by_mass(proposal, rival) -> str:

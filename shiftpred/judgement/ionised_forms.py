@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from rdkit import Chem
 
-__all__ = ["build_ionised_forms"]
+from shiftpred.records import Structure
+
+__all__ = ["build_ionised_forms", "build_ionised_structures"]
 
 _MOST_SITES = 6
 _BASES = (
@@ -57,6 +59,14 @@ def build_ionised_forms(mol: Chem.Mol) -> tuple[tuple[Chem.Mol, str], ...]:
         if Chem.SanitizeMol(out, catchErrors=True) == Chem.SanitizeFlags.SANITIZE_NONE:
             forms.append((out, ", ".join(sorted(set(sites.values())))))
     return tuple(forms)
+
+
+def build_ionised_structures(structure: Structure) -> tuple[tuple[Structure, str], ...]:
+    """Return the ionised forms of a structure as structures with the same atom numbers, each with what was done in words."""
+    return tuple(
+        (Structure(structure.name, mol, structure.atom_numbers, structure.text, structure.deuterium, structure.notes), words)
+        for mol, words in build_ionised_forms(structure.mol)
+    )
 
 
 def _find(mol, patterns) -> dict[int, str]:

@@ -191,11 +191,10 @@ def _build_cautions(proposal, peaks, settings, ionised, several) -> tuple[str, .
         out.append("no 13C list: judged by 1H alone, which tells close isomers apart less well")
     if settings.solvent is None and not any(p.peak_list.solvent for p in peaks.values()):
         out.append("solvent not given: solvent lines cannot fix the reference")
-    for one in proposal.nuclei.values():
+    for nucleus, one in proposal.nuclei.items():
         for name in one.impurities:
-            out.append(
-                f"{one.units.nucleus}: lines of {name.removeprefix('possibly ')} ({'possibly ' if name.startswith('possibly') else ''}present)"
-            )
+            bare = name.removeprefix("possibly ")
+            out.append(f"{nucleus}: {'possibly ' if bare != name else ''}{bare} in the tube")
     for prepared in peaks.values():
         out += [note for note in prepared.peak_list.notes]
     out += list(proposal.prediction.notes)
@@ -210,8 +209,8 @@ def _build_steps(proposal, peaks, fits, settings, judgement_map, lists) -> tuple
         shared = int((one.sharing[:n] >= 0).sum())
         guests = int((one.chosen[n:] >= 0).sum())
         steps.append(
-            f"{nucleus}: {len(one.lines)} lines, {n} sets of equivalent nuclei; {assigned} assigned, {shared} share a line, "
-            f"{len(one.terms['missing'])} missing; {guests} lines of solvent, water or impurities, {len(one.leftover)} unexplained"
+            f"{nucleus}: {len(one.lines)} lines, {n} sets of equivalent nuclei; {assigned} assigned, {shared} share a "
+            f"line, {len(one.terms['missing'])} missing; {guests} solvent, water or impurity, {len(one.leftover)} unexplained"
         )
     steps.append(f"compared with {len(fits) - 1} rivals; prior {settings.prior:g}; map for {lists}")
     steps.append(

@@ -178,8 +178,8 @@ def _describe_offset(nucleus: str, one: NucleusFit) -> tuple[float, str]:
 def build_offset_cautions(fit: StructureFit) -> tuple[str, ...]:
     """Return a warning for each list that is off its reference by more than its limit."""
     return tuple(
-        f"the {nucleus} list is {one.offset_ppm:+.2f} ppm off its reference (limit {PARAMETERS[nucleus].warn_offset_ppm:g} ppm): "
-        "check the referencing"
+        f"the {nucleus} list is {one.offset_ppm:+.2f} ppm off its reference "
+        f"(limit {PARAMETERS[nucleus].warn_offset_ppm:g} ppm): check the referencing"
         for nucleus, one in fit.nuclei.items()
         if abs(one.offset_ppm) > PARAMETERS[nucleus].warn_offset_ppm
     )
