@@ -14,7 +14,6 @@ from shiftpred.errors import SettingError, quote
 from shiftpred.features.molecule_arrays import build_molecule_arrays, join_molecule_arrays
 from shiftpred.features.solvents import SOLVENTS
 from shiftpred.records import MoleculePrediction, NucleusPrediction, RecordFailure, Structure
-from shiftpred.structures.environments import compute_environments
 from shiftpred.structures.sites import compute_sites
 
 __all__ = ["predict_molecules", "require_nucleus", "select_nucleus"]
@@ -121,12 +120,11 @@ def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scal
     for column, nucleus in enumerate(("13C", "1H")):
         if nucleus not in nuclei:
             continue
-        environments = compute_environments(structure.mol, nucleus)
         shared = _average_over_equivalent(sites, values[:, column], scales[:, column])
-        for site, environment in zip(sites, environments):
+        for site in sites:
             if (site.element != "C") if nucleus == "13C" else (site.attached_h == 0):
                 continue
-            i = site.atom_index
+            i, environment = site.atom_index, site.environment
             shift, scale = shared[i]
             level = int(levels[i])
             scale *= bundle.intervals.compute_novelty_factor(nucleus, level)
@@ -153,13 +151,13 @@ def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scal
 
 def _average_over_equivalent(sites, values, scales):
     """Return (shift, scale) by atom index; equivalent sites share one value to the last digit."""
+    shift, scale = values.tolist(), scales.tolist()
     shared: dict[int, tuple[float, float]] = {}
     for site in sites:
+        members = site.equivalent
         if site.atom_index not in shared:
-            members = list(site.equivalent)
-            both = (float(np.mean(values[members])), float(np.mean(scales[members])))
-            for j in members:
-                shared[j] = both
+            both = (sum(shift[j] for j in members) / len(members), sum(scale[j] for j in members) / len(members))
+            shared.update(dict.fromkeys(members, both))
     return shared
 
 

@@ -135,7 +135,8 @@ def build_molecule_arrays(mol: Chem.Mol, electronic: bool = True, stereo: bool =
     o_h, o_n, o_sp = _OFFSET["hydrogens_0"], _OFFSET["neighbours_0"], _OFFSET["sp"]
     o_pos, o_aromatic, o_centre = _OFFSET["positive"], _OFFSET["aromatic"], _OFFSET["stereocentre"]
     any_centre = False
-    for i, atom in enumerate(mol.GetAtoms()):
+    for i in range(n):  # by index: iterating over GetAtoms() costs several times as much
+        atom = mol.GetAtomWithIdx(i)
         z, h = atom.GetAtomicNum(), atom.GetTotalNumHs()
         number[i], hydrogens[i] = z, h
         row = atoms[i]
@@ -183,7 +184,8 @@ def _build_bonds(mol, n, rings):
     begin, end = np.empty(m, dtype=np.int64), np.empty(m, dtype=np.int64)
     rows = np.zeros((m, N_BOND_FEATURES), dtype=np.float32)
     o_conjugated, o_ring = _BOND_OFFSET["conjugated"], _BOND_OFFSET["ring_3"]
-    for k, bond in enumerate(mol.GetBonds()):
+    for k in range(m):
+        bond = mol.GetBondWithIdx(k)
         begin[k], end[k] = bond.GetBeginAtomIdx(), bond.GetEndAtomIdx()
         row = rows[k]
         row[_BOND_KIND.get(bond.GetBondType(), 4)] = 1
@@ -221,7 +223,8 @@ def _fill_electronic(mol, atoms, number, hydrogens, hybrid, source, target):
     rdPartialCharges.ComputeGasteigerCharges(mol)
     charge = np.empty(n)
     on_hydrogens = np.empty(n)
-    for i, atom in enumerate(mol.GetAtoms()):
+    for i in range(n):
+        atom = mol.GetAtomWithIdx(i)
         charge[i] = atom.GetDoubleProp("_GasteigerCharge")
         on_hydrogens[i] = atom.GetDoubleProp("_GasteigerHCharge")
     # Without parameters (metals) the charges come back as nan; zero then means "not known".

@@ -48,7 +48,8 @@ def compute_stereo_edges(mol: Chem.Mol, any_centre: bool, rings) -> tuple[list[i
         Bond index → +1 for two neighbouring centres of like descriptor (R,R or S,S), -1 for unlike.
     """
     begin, end, kind = [], [], []
-    for bond in mol.GetBonds():
+    for k in range(mol.GetNumBonds()):
+        bond = mol.GetBondWithIdx(k)
         if bond.GetBondType() == Chem.BondType.DOUBLE:
             stereo = bond.GetStereo()
             if stereo in _CIS or stereo in _TRANS:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from rdkit import Chem
 
-__all__ = ["coarser_environment", "compute_environments"]
+__all__ = ["coarser_environment", "compute_environments", "compute_site_environments"]
 
 _SP, _SP2, _SP3 = Chem.HybridizationType.SP, Chem.HybridizationType.SP2, Chem.HybridizationType.SP3
 _DOUBLE, _TRIPLE = Chem.BondType.DOUBLE, Chem.BondType.TRIPLE
@@ -42,23 +42,30 @@ def compute_environments(mol: Chem.Mol, nucleus: str) -> list[str | None]:
     list of str or None
         (n_atoms,); None where the atom has no such nucleus (not a carbon; no hydrogen).
     """
+    found = compute_site_environments(mol)
+    if nucleus == "13C":
+        return [e if a.GetAtomicNum() == 6 else None for e, a in zip(found, mol.GetAtoms())]
+    return [e if a.GetTotalNumHs() else None for e, a in zip(found, mol.GetAtoms())]
+
+
+def compute_site_environments(mol: Chem.Mol) -> list[str]:
+    """Return the class of each atom's site, (n_atoms,), '' for a site with neither carbon nor hydrogen.
+
+    A carbon and its hydrogens share one class.
+    """
+    # By index: iterating over GetAtoms() costs several times as much.
+    atoms = [mol.GetAtomWithIdx(i) for i in range(mol.GetNumAtoms())]
+    elements = [a.GetAtomicNum() for a in atoms]
     heteroaromatic = set()
-    ring_info = mol.GetRingInfo()
-    for ring in ring_info.AtomRings():
-        atoms = [mol.GetAtomWithIdx(i) for i in ring]
-        if all(a.GetIsAromatic() for a in atoms) and any(a.GetAtomicNum() != 6 for a in atoms):
+    for ring in mol.GetRingInfo().AtomRings():
+        if any(elements[i] != 6 for i in ring) and all(atoms[i].GetIsAromatic() for i in ring):
             heteroaromatic.update(ring)
-    out: list[str | None] = []
-    for atom in mol.GetAtoms():
-        z = atom.GetAtomicNum()
-        if nucleus == "1H" and atom.GetTotalNumHs() == 0:
-            out.append(None)
-        elif z == 6:
-            out.append(_classify_carbon(atom, atom.GetIdx() in heteroaromatic))
-        elif nucleus == "13C":
-            out.append(None)
+    out = []
+    for i, (atom, z) in enumerate(zip(atoms, elements)):
+        if z == 6:
+            out.append(_classify_carbon(atom, i in heteroaromatic))
         else:
-            out.append(_classify_hydride(atom, z))
+            out.append(_classify_hydride(atom, z) if atom.GetTotalNumHs() else "")
     return out
 
 

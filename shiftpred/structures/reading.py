@@ -312,7 +312,8 @@ def _build(mol: Chem.Mol, name: str, where: str, text: str | None = None, notes:
     if mol.GetNumAtoms() == 0:
         raise StructureError(where, "a structure without atoms", "at least one heavy atom", "draw the structure again")
     heavy = 0
-    for atom in mol.GetAtoms():
+    for i in range(mol.GetNumAtoms()):
+        atom = mol.GetAtomWithIdx(i)
         heavy += atom.GetAtomicNum() > 1
         if atom.GetAtomicNum() == 0 or atom.HasQuery() and atom.DescribeQuery().count("Atom") > 1:
             raise StructureError(

@@ -13,7 +13,7 @@ import numpy as np
 from rdkit import Chem
 
 from shiftpred.records import Site, Structure
-from shiftpred.structures.environments import compute_environments
+from shiftpred.structures.environments import compute_site_environments
 
 __all__ = ["Equivalence", "compute_equivalence", "compute_sites"]
 
@@ -38,23 +38,26 @@ def compute_sites(structure: Structure) -> tuple[Site, ...]:
     """Return the site of every atom, in the order of `structure.mol`."""
     mol = structure.mol
     equivalence = compute_equivalence(mol)
-    carbon, hydrogen = compute_environments(mol, "13C"), compute_environments(mol, "1H")
+    environments = compute_site_environments(mol)
     members: dict[int, list[int]] = {}
     alike: dict[int, list[int]] = {}
     for i, (g, c) in enumerate(zip(equivalence.group.tolist(), equivalence.constitutional.tolist())):
         members.setdefault(g, []).append(i)
         alike.setdefault(c, []).append(i)
     sites = []
-    for i, atom in enumerate(mol.GetAtoms()):
-        own = tuple(members[int(equivalence.group[i])])
+    groups, ranks, differ = equivalence.group.tolist(), equivalence.constitutional.tolist(), equivalence.geminal_differ.tolist()
+    for i in range(len(groups)):
+        atom = mol.GetAtomWithIdx(i)
+        own = tuple(members[groups[i]])
         total = atom.GetTotalNumHs()
         heavy = structure.deuterium[i] if structure.deuterium else 0
-        others = tuple(j for j in alike[int(equivalence.constitutional[i])] if j not in own)
+        same = alike[ranks[i]]
+        others = tuple(j for j in same if j not in own) if len(same) > len(own) else ()
         sites.append(
             Site(
                 i, structure.atom_numbers[i], atom.GetSymbol(), total - heavy, heavy, own, others,
-                bool(equivalence.geminal_differ[i]) and total - heavy == 2,
-                atom.GetAtomicNum() in _LABILE and total > heavy, carbon[i] or hydrogen[i] or "",
+                differ[i] and total - heavy == 2,
+                atom.GetAtomicNum() in _LABILE and total > heavy, environments[i],
             )
         )
     return tuple(sites)
@@ -70,10 +73,15 @@ def compute_equivalence(mol: Chem.Mol) -> Equivalence:
     n = mol.GetNumAtoms()
     rank = np.array(list(Chem.CanonicalRankAtoms(mol, breakTies=False, includeChirality=False, includeIsotopes=False)), dtype=np.int64)
     group, differ = rank.copy(), np.zeros(n, dtype=bool)
-    atoms = list(mol.GetAtoms())
-    neighbours = [[x.GetIdx() for x in a.GetNeighbors()] for a in atoms]
+    atoms = [mol.GetAtomWithIdx(i) for i in range(n)]
+    neighbours: list[list[int]] = [[] for _ in range(n)]
+    for k in range(mol.GetNumBonds()):
+        bond = mol.GetBondWithIdx(k)
+        a, b = bond.GetBeginAtomIdx(), bond.GetEndAtomIdx()
+        neighbours[a].append(b)
+        neighbours[b].append(a)
     hydrogens = [a.GetTotalNumHs() for a in atoms]
-    test = _LabelTest(mol, rank, neighbours, hydrogens)
+    test = _LabelTest(mol, atoms, rank, neighbours, hydrogens)
     for i, atom in enumerate(atoms):
         if hydrogens[i] == 2:
             differ[i] = _hydrogens_differ(atom, i, atoms, neighbours, rank, test)
@@ -85,10 +93,10 @@ def compute_equivalence(mol: Chem.Mol) -> Equivalence:
 class _LabelTest:
     """Finds the stereocentres that a molecule has, or gets once one of its atoms is labelled."""
 
-    def __init__(self, mol, rank, neighbours, hydrogens):
+    def __init__(self, mol, atoms, rank, neighbours, hydrogens):
         self.mol, self.rank, self.neighbours, self.hydrogens = mol, rank, neighbours, hydrogens
         self.candidates = [
-            i for i, a in enumerate(mol.GetAtoms())
+            i for i, a in enumerate(atoms)
             if len(neighbours[i]) + hydrogens[i] == 4 and hydrogens[i] < 2 and a.GetHybridization() == _SP3
             or (a.GetAtomicNum() in (15, 16) and len(neighbours[i]) == 3 and hydrogens[i] == 0 and a.GetHybridization() == _SP3
                 and not a.GetIsAromatic())
@@ -172,7 +180,8 @@ def _split_groups(mol, atoms, neighbours, rank, group, test):
     for i, r in enumerate(rank.tolist()):
         sets.setdefault(r, []).append(i)
     sets = {r: m for r, m in sets.items() if len(m) > 1}
-    drawn = any(a.GetChiralTag() for a in atoms) or any(b.GetStereo() > Chem.BondStereo.STEREOANY for b in mol.GetBonds())
+    bonds = (mol.GetBondWithIdx(k) for k in range(mol.GetNumBonds()))
+    drawn = any(a.GetChiralTag() for a in atoms) or any(b.GetStereo() > Chem.BondStereo.STEREOANY for b in bonds)
     fresh = len(atoms)
     distance = Chem.GetDistanceMatrix(mol)
     for members in sets.values():

@@ -35,7 +35,8 @@ def standardise_mol(mol: Chem.Mol) -> tuple[Chem.Mol, tuple[int, ...], tuple[int
     """
     notes: list[str] = []
     explicit = isotopes = charges = maps = metals = radicals = False
-    for atom in mol.GetAtoms():
+    for i in range(mol.GetNumAtoms()):
+        atom = mol.GetAtomWithIdx(i)
         z = atom.GetAtomicNum()
         explicit |= z == 1
         isotopes |= atom.GetIsotope() != 0
