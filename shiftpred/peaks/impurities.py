@@ -53,7 +53,16 @@ def impurity_sets(solvent: str | None) -> tuple[ImpuritySet, ...]:
             ImpuritySet(name, rows[0]["smiles"], rows[0]["solvent"], {k: tuple(v) for k, v in lines.items()}, not own,
                         rows[0]["source"], "memory" if any(r["verified"] == "memory" for r in rows) else "transcription")
         )
-    return tuple(sorted(out, key=lambda s: s.name))
+    return tuple(sorted((s for s in out if not _is_the_solvent(s, solvent)), key=lambda s: s.name))
+
+
+def _is_the_solvent(entry: ImpuritySet, solvent: str | None) -> bool:
+    """Say whether all lines lie where the solvent's own do (chloroform in CDCl3, water in D2O): that is the solvent, no impurity."""
+    return all(
+        any(abs(x - line.shift_ppm) <= TOLERANCE[nucleus] for line in solvent_lines(solvent, nucleus))
+        for nucleus, shifts in entry.lines.items()
+        for x in shifts
+    )
 
 
 def name_leftovers(

@@ -78,3 +78,9 @@ def test_single_line_is_only_possible():
 
 def test_unknown_line_stays_unnamed():
     assert name_leftovers({"13C": [99.0]}, "CDCl3") == {}
+
+
+def test_the_solvent_is_no_impurity_in_itself():
+    assert "chloroform" not in {s.name for s in impurity_sets("CDCl3")} and "chloroform" in {s.name for s in impurity_sets("DMSO-d6")}
+    labels = name_leftovers({"13C": [77.16], "1H": [7.26]}, "CDCl3")
+    assert set(labels.values()) == {"solvent CDCl3"}
