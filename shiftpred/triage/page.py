@@ -32,6 +32,15 @@ def render_triage_page(rows: list[dict], edition: str, settings: dict, date: str
     template = Environment(autoescape=True, trim_blocks=True, lstrip_blocks=True).from_string(text)
     counts = Counter(row["judgement"] or "unjudged" for row in rows)
     marks = {name: Markup(render_judgement_svg(name, 22)) for name in JUDGEMENT_COLOUR}
-    shown = [dict(row, picture=Markup(row.get("thumbnail") or "")) for row in rows]
-    stated = {k: settings[k] for k in _KEEP if settings.get(k) not in (None, (), "")}
+    shown = [
+        dict(row, picture=Markup(row.get("thumbnail") or ""), shown_probability=_render_probability(row["probability"])) for row in rows
+    ]
+    stated = {k.replace("_", " "): settings[k] for k in _KEEP if settings.get(k) not in (None, (), "", False)}
     return template.render(rows=shown, counts=counts, marks=marks, edition=edition, settings=stated, date=date)
+
+
+def _render_probability(value) -> str:
+    """Write a probability without claiming certainty."""
+    if value == "":
+        return "–"
+    return "> 0.99" if value > 0.99 else "< 0.01" if value < 0.01 else f"{value:.2f}"

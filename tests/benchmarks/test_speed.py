@@ -1,4 +1,4 @@
-"""Speed, watched and never asserted: `pytest tests/benchmarks --benchmark-only` (left out of the everyday run)."""
+"""Speed, watched and never asserted: `pytest tests/benchmarks -m benchmark` (left out of the everyday run)."""
 
 import subprocess
 import sys
