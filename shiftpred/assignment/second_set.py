@@ -14,7 +14,7 @@ from shiftpred.assignment.weights import compute_log_student
 __all__ = ["assign_second_set", "find_second_set_reason"]
 
 _LOG_PRIOR = float(np.log(0.03))
-_SCALE_PPM = {"13C": 0.8, "1H": 0.08}
+_SCALE_PPM = {"13C": 1.2, "1H": 0.12}
 _FARTHEST_PPM = {"13C": 4.0, "1H": 0.5}
 _FEWEST_LINES = 2
 """Chance that such a compound shows a second set, and how far its lines lie from the first (common practice, no source)."""

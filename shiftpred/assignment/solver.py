@@ -149,12 +149,22 @@ def improve_with_counts(
         Log weight of the whole.
     """
     n, m = weight.shape
-    chosen = chosen.copy()
-    if m == 0:
-        return chosen, float(without.sum())
+    if m == 0 or n == 0:
+        return np.full(n, -1), float(without.sum() + leftover.sum())
     extended = np.concatenate([weight, without[:, None]], axis=1)  # column m: without a line
-    place = np.where(chosen < 0, m, chosen)
-    units = np.arange(n)
+    nearest = np.where(weight.max(axis=1) > without, weight.argmax(axis=1), m)
+    best = None
+    for start in (np.where(chosen < 0, m, chosen), nearest):
+        place, total = _climb(start, extended, leftover, count, penalty, log_resolution)
+        if best is None or total > best[1] + _LEAST_GAIN:
+            best = (place, total)
+    return np.where(best[0] == m, -1, best[0]), best[1]
+
+
+def _climb(place, extended, leftover, count, penalty, log_resolution) -> tuple[np.ndarray, float]:
+    """Take the best move or exchange again and again; return the places (the last one: without a line) and the log weight."""
+    n, m = extended.shape[0], extended.shape[1] - 1
+    place, units = place.copy(), np.arange(n)
     for _ in range(_MOST_STEPS):
         sums = np.bincount(place, weights=count, minlength=m + 1)[:m]
         users = np.bincount(place, minlength=m + 1)[:m]
@@ -187,7 +197,7 @@ def improve_with_counts(
     sums = np.bincount(place, weights=count, minlength=m + 1)[:m]
     users = np.bincount(place, minlength=m + 1)[:m]
     total = float(extended[units, place].sum() + _column_values(sums, users, leftover, penalty, log_resolution).sum())
-    return np.where(place == m, -1, place), total
+    return place, total
 
 
 def _column_values(sums, users, leftover, penalty, log_resolution, columns=None):
