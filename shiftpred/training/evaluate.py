@@ -1,8 +1,8 @@
 """How good is a model on compounds that it has not seen? Errors by environment class, intervals, and three baselines beside it.
 
 Peaks without atom numbers are assigned by the model that is judged, which flatters it. So errors against true assignments
-(`datasets/measured_shifts`), on sites whose assignment needs no prediction, and the agreement of 13C and 1H assignments that were
-made apart stand beside them.
+(`datasets/measured_shifts`), on sites whose assignment needs no prediction, and the agreement of 13C and 1H assignments that
+were made apart stand beside them.
 """
 
 from __future__ import annotations
@@ -40,7 +40,7 @@ from shiftpred.training.evaluation_text import render_evaluation
 from shiftpred.training.measured_shifts import compare_with_measured, load_measured_connectivities
 from shiftpred.training.open_tables import Compound, load_open_tables
 
-__all__ = ["SPLIT_CHOICES", "evaluate_model"]
+__all__ = ["SPLIT_CHOICES", "compute_width_ratio", "evaluate_model"]
 
 SCHEMA_VERSION = 1
 SPLIT_CHOICES = ("test", "calibration", "ours", "all")
@@ -331,13 +331,13 @@ def _summarise_coverages(sites: pd.DataFrame, bundle: ModelBundle) -> dict:
         nucleus = "13C" if kind == "13C" else "1H"
         out[kind] = {}
         for coverage in COVERAGES:
-            ratio = {e: _compute_width_ratio(bundle, nucleus, e, coverage) for e in rows.environment.unique()}
+            ratio = {e: compute_width_ratio(bundle, nucleus, e, coverage) for e in rows.environment.unique()}
             half = rows.half.to_numpy() * rows.environment.map(ratio).to_numpy()
             out[kind][str(coverage)] = compute_coverage_figures(rows.error.to_numpy(), half, rows.molecule.to_numpy(), coverage)
     return out
 
 
-def _compute_width_ratio(bundle: ModelBundle, nucleus: str, environment: str, coverage: float) -> float:
+def compute_width_ratio(bundle: ModelBundle, nucleus: str, environment: str, coverage: float) -> float:
     """Return by how much an interval of a class is wider at `coverage` than at the nominal one."""
     wanted = bundle.intervals.compute_factor(nucleus, environment, coverage)
     base = bundle.intervals.compute_factor(nucleus, environment, _NOMINAL)

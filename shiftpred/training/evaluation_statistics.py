@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 import numpy as np
+from scipy.special import stdtr
 
 __all__ = [
     "compute_cluster_error",
@@ -141,8 +142,6 @@ def compute_shortfall(inside: np.ndarray, molecule: np.ndarray, at_least: float)
         One-sided p value of "the coverage is `at_least` or better" (t test with as many degrees of freedom as there are
         molecules, less one); 1 where coverage reaches `at_least`, or where a single molecule is all there is.
     """
-    from scipy.stats import t
-
     inside = np.asarray(inside, dtype=float)
     if inside.mean() >= at_least:
         return 1.0
@@ -151,7 +150,7 @@ def compute_shortfall(inside: np.ndarray, molecule: np.ndarray, at_least: float)
     # A class in which nothing at all is inside has no spread; the binomial chance of that stands in.
     if error == 0:
         return float((1 - at_least) ** n_molecules)
-    return float(t.cdf((inside.mean() - at_least) / error, max(1, n_molecules - 1)))
+    return float(stdtr(max(1, n_molecules - 1), (inside.mean() - at_least) / error))
 
 
 def correct_for_many(p_values: Sequence[float]) -> np.ndarray:

@@ -99,6 +99,8 @@ def _render_baselines(result: dict) -> str:
     rows = []
     for name, kinds in result["baselines"].items():
         for kind, f in kinds.items():
+            if not f["sites"]:
+                continue
             rows.append(
                 (
                     _BASELINE_TITLES[name],
@@ -134,7 +136,7 @@ def _render_baselines(result: dict) -> str:
     return (
         "BASELINES, ON THE SAME SITES WITH THE SAME OBSERVED VALUES (the model's assignment)\n"
         + _table(head, rows)
-        + "\nown assignment: mean error after an assignment with the baseline's own values, all sites, 40 or 4 ppm where it has none"
+        + "\nown assignment: mean error after an assignment with the baseline's own values; 40 or 4 ppm where it has none"
     )
 
 
@@ -179,7 +181,7 @@ def _render_classes(result: dict) -> str:
     if blocks:
         blocks[-1] += (
             "\nrules, model, n: mean error of the published rules, of the model on those same sites, and their number"
-            "\n!  covers significantly less than 88 % (200 sites or more; clustered by molecule; corrected for all classes, p < 0.05)"
+            "\n!  covers significantly less than 88 % (200 sites or more; clustered by molecule, corrected for all classes)"
         )
     return "\n\n".join(blocks)
 
@@ -236,15 +238,15 @@ def _render_certainty(result: dict) -> str:
     p, g = result["pairs"], result["geminal"]
     if p["pairs"]:
         text += (
-            f"\n\nC-H pairs hidden, both nuclei assigned apart: {_percent(p['same_atom'])} of {p['pairs']:,} pairs meet on one atom"
-            f" ({_percent(p['by_chance'])} by chance among carbons with as many hydrogens);"
-            f"\nof {p['open_pairs']:,} that hydrogen counts do not settle: {_percent(p['open_same_atom'])}."
+            f"\n\nC-H pairs hidden, both nuclei assigned apart: {_percent(p['same_atom'])} of {p['pairs']:,} pairs meet"
+            f" on one atom\n({_percent(p['by_chance'])} by chance among carbons with as many hydrogens);"
+            f" of {p['open_pairs']:,} that hydrogen counts do not settle: {_percent(p['open_same_atom'])}."
         )
     if g["groups"]:
         text += (
-            f"\n\nCH2 with two measured 1H values: {g['groups']:,}; {_percent(g['said_to_differ'])} predicted as rows a and b; their mean"
-            f" distance is {_ppm(g['mean_gap_ppm'])} ppm,\nits error {_ppm(g['gap_error_ppm'])} ppm; single hydrogens inside their"
-            f" intervals: {_percent(g['coverage'])}."
+            f"\n\nCH2 with two measured 1H values: {g['groups']:,}; {_percent(g['said_to_differ'])} are predicted as rows a, b."
+            f"\nTheir distance is {_ppm(g['mean_gap_ppm'])} ppm on average, its error {_ppm(g['gap_error_ppm'])} ppm;"
+            f" single hydrogens inside their intervals: {_percent(g['coverage'])}."
         )
     return text
 

@@ -67,9 +67,9 @@ def compare_with_measured(bundle: ModelBundle, coverage: float = 0.9) -> dict:
     Returns
     -------
     dict
-        'nuclei': errors and coverage for 13C, 1H on carbon and exchangeable 1H; 'without_suspects': the errors without the
-        rows whose note suspects a misprint; 'by_solvent'; 'worst': the ten worst atoms of each nucleus, each in its worst solvent;
-        'solvent_differences': published and predicted change from CDCl3 to another solvent.
+        'nuclei': errors and coverage for 13C, 1H on carbon and exchangeable 1H; 'without_suspects': the errors without
+        the rows whose note suspects a misprint; 'by_solvent'; 'worst': the ten worst atoms of each nucleus, each in
+        its worst solvent; 'solvent_differences': published and predicted change from CDCl3 to another solvent.
     """
     table = _predict_rows(load_measured_shifts().copy(), bundle, coverage)
     table["error"] = table.shift_ppm - table.predicted
@@ -140,10 +140,11 @@ def _list_worst(rows: pd.DataFrame) -> list[dict]:
 def _compare_solvents(table: pd.DataFrame) -> dict:
     """Compare the change from CDCl3 to each other solvent, where one source gives both, with what is predicted."""
     key = ["smiles", "atom_index", "nucleus", "source"]
-    base = table[table.solvent == _REFERENCE_SOLVENT].groupby(key)[["shift_ppm", "predicted"]].mean()
+    names = {"shift_ppm": "base_observed", "predicted": "base_predicted"}
+    base = table[table.solvent == _REFERENCE_SOLVENT].groupby(key)[list(names)].mean().rename(columns=names)
     other = table[table.solvent.isin(SOLVENTS[1:]) & ~table.solvent.isin((_REFERENCE_SOLVENT, "neat"))]
-    pairs = other.join(base, on=key, rsuffix="_base", how="inner")
-    pairs = pairs.assign(published=pairs.shift_ppm - pairs.shift_ppm_base, computed=pairs.predicted - pairs.predicted_base)
+    pairs = other.join(base, on=key, how="inner")
+    pairs = pairs.assign(published=pairs.shift_ppm - pairs.base_observed, computed=pairs.predicted - pairs.base_predicted)
     out = {}
     for kind, rows in pairs.groupby("kind"):
         out[kind] = dict(

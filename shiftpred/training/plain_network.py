@@ -1,13 +1,13 @@
 """A plain message-passing network for comparison: elements, hydrogens, charges and bond types alone.
 
-What does it bring to give the network electronic constants, hybridisation, rings, conjugation and stereo, and to make it wide and
-deep? This one has none of them: 128 wide, 4 layers, one-hot atoms and bonds, the optimal assignment redone in every pass. It is
-trained on the same compounds with the same loss by the same trainer, so that nothing else differs.
+What does it bring to give the network electronic constants, hybridisation, rings, conjugation and stereo, and to make it wide
+and deep? This one has none of them: 128 wide, 4 layers, one-hot atoms and bonds, the optimal assignment redone in every
+pass. It is trained on the same compounds with the same loss by the same trainer, so that nothing else differs.
 
     python -m shiftpred.training.plain_network TABLES FOLDER --passes 24 --processes 2
 
-writes FOLDER/plain_network.npz, which `shiftpred evaluate --plain-network` reads, and FOLDER/figures.json with its errors on the
-compounds held out. A run that was stopped goes on from FOLDER/checkpoint.pt.
+writes FOLDER/plain_network.npz, which `shiftpred evaluate --plain-network` reads, and FOLDER/figures.json with its errors on
+the compounds held out. A run that was stopped goes on from FOLDER/checkpoint.pt.
 """
 
 from __future__ import annotations
@@ -33,7 +33,7 @@ __all__ = ["build_plain_arrays", "load_plain_network", "predict_plain", "train_p
 
 PASSES = 24
 FILE = "plain_network.npz"
-_KEPT_ATOMS = np.array([name.startswith(("element_", "hydrogens_")) or name in ("positive", "negative") for name in ATOM_FEATURES])
+_KEPT_ATOMS = np.array([n.startswith(("element_", "hydrogens_")) or n in ("positive", "negative") for n in ATOM_FEATURES])
 _KEPT_BONDS = np.array([name in ("single", "double", "triple", "aromatic", "other_order") for name in BOND_FEATURES])
 
 
@@ -67,7 +67,9 @@ def load_plain_network(path: str | Path) -> EnvironmentModel:
             return EnvironmentModel({name: archive[name] for name in archive.files})
     except (OSError, ValueError, KeyError) as error:
         raise BundleError(
-            str(path), f"no readable network ({error})", f"a {FILE} as this module writes it",
+            str(path),
+            f"no readable network ({error})",
+            f"a {FILE} as this module writes it",
             "python -m shiftpred.training.plain_network TABLES FOLDER",
         ) from None
 
@@ -116,8 +118,16 @@ def train_plain_network(
 
     begun, folder = time.time(), Path(folder)
     settings = NetworkSettings(
-        width=128, layers=4, message=128, hidden=128, passes=passes, first_passes=1, label_order=0.0, cleaning=False,
-        electronic=False, stereo=False,
+        width=128,
+        layers=4,
+        message=128,
+        hidden=128,
+        passes=passes,
+        first_passes=1,
+        label_order=0.0,
+        cleaning=False,
+        electronic=False,
+        stereo=False,
     )
     compounds = load_open_tables(tables, load_measured_connectivities())
     graphs = [build_plain_arrays(c.mol) for c in show_progress(compounds, "molecules to arrays", len(compounds))]

@@ -145,7 +145,7 @@ def test_unknown_geometry_gets_the_mean():
     assert_value(unknown, (e + z) / 2)
 
 
-@pytest.mark.parametrize("name", ["toluene", "anisole", "chlorobenzene", "ethylbenzene", "benzyl alcohol", "p-xylene", "o-xylene"])
+@pytest.mark.parametrize("name", ["toluene", "anisole", "chlorobenzene", "ethylbenzene", "benzyl alcohol", "o-xylene"])
 def test_benzene_carbons_against_measured_shifts(name):
     table = load_measured_shifts()
     rows = table[(table["name"] == name) & (table.nucleus == "13C") & (table.solvent == "CDCl3")]
