@@ -50,8 +50,15 @@ def impurity_sets(solvent: str | None) -> tuple[ImpuritySet, ...]:
             if not any(abs(float(row["shift_ppm"]) - x) < TOLERANCE[row["nucleus"]] / 3 for x in shifts):
                 shifts.append(float(row["shift_ppm"]))
         out.append(
-            ImpuritySet(name, rows[0]["smiles"], rows[0]["solvent"], {k: tuple(v) for k, v in lines.items()}, not own,
-                        rows[0]["source"], "memory" if any(r["verified"] == "memory" for r in rows) else "transcription")
+            ImpuritySet(
+                name,
+                rows[0]["smiles"],
+                rows[0]["solvent"],
+                {k: tuple(v) for k, v in lines.items()},
+                not own,
+                rows[0]["source"],
+                "memory" if any(r["verified"] == "memory" for r in rows) else "transcription",
+            )
         )
     return tuple(sorted((s for s in out if not _is_the_solvent(s, solvent)), key=lambda s: s.name))
 
@@ -128,8 +135,11 @@ def _match(entry: ImpuritySet, shifts, hidden, labels, solvent):
         if nucleus not in shifts:
             continue
         for line in lines:
-            near = [(abs(x - line), k) for k, x in enumerate(shifts[nucleus])
-                    if abs(x - line) <= tolerance[nucleus] and (nucleus, k) not in labels and (nucleus, k) not in keys]
+            near = [
+                (abs(x - line), k)
+                for k, x in enumerate(shifts[nucleus])
+                if abs(x - line) <= tolerance[nucleus] and (nucleus, k) not in labels and (nucleus, k) not in keys
+            ]
             if near:
                 distance, k = min(near)
                 keys.append((nucleus, k))
@@ -149,10 +159,29 @@ def _match(entry: ImpuritySet, shifts, hidden, labels, solvent):
 
 def _exchanges(entry: ImpuritySet, line: float) -> bool:
     """Say whether a 1H line may be absent because it is an O-H or N-H (the tables list them; samples often do not show them)."""
-    return entry.name in ("ethanol", "methanol", "2-propanol", "1-butanol", "isobutanol", "isoamyl alcohol", "benzyl alcohol",
-                          "tert-butyl alcohol", "ethylene glycol", "acetic acid", "formic acid", "pyrrole", "imidazole",
-                          "pyrrolidine", "ethyl L-lactate", "BHT") and line in _LIKELY_LABILE.get(entry.name, ()) or (
-        entry.name in ("acetic acid", "formic acid") and line > 9)
+    return (
+        entry.name
+        in (
+            "ethanol",
+            "methanol",
+            "2-propanol",
+            "1-butanol",
+            "isobutanol",
+            "isoamyl alcohol",
+            "benzyl alcohol",
+            "tert-butyl alcohol",
+            "ethylene glycol",
+            "acetic acid",
+            "formic acid",
+            "pyrrole",
+            "imidazole",
+            "pyrrolidine",
+            "ethyl L-lactate",
+            "BHT",
+        )
+        and line in _LIKELY_LABILE.get(entry.name, ())
+        or (entry.name in ("acetic acid", "formic acid") and line > 9)
+    )
 
 
 _LIKELY_LABILE = {"ethanol": (1.32,), "methanol": (1.09,), "BHT": (5.01,)}

@@ -1,7 +1,10 @@
-"""Peaks the way journals print them, plain numbers among them.
+"""Peaks the way journals print them, plain numbers and 'shift/…' pairs among them.
 
-A scanner walks once through the text: a number or a range, then what belongs to it (a bracket, '/…', '× 2'), then a separator.
-Whatever is none of these is a problem with its place; nothing is skipped.
+A scanner walks once through the text: a number or a range, then what belongs to it ('/…', '× 2', brackets, bare words such as
+'s, 3H'), then a separator. Whatever is none of these is a problem with its place; nothing is skipped.
+
+Pairs: a whole number 0 to 3 behind '/' is the number of attached hydrogens ('128.4/1'); the other nucleus' shift must carry a
+decimal point ('60.9/4.38', '60.9/4.0'). Anything else is refused, as it could mean either.
 """
 
 from __future__ import annotations
@@ -9,254 +12,382 @@ from __future__ import annotations
 import re
 from dataclasses import replace
 
-from shiftpred.errors import SettingError
-from shiftpred.peaks.solvents import normalise_solvent
+from shiftpred.peaks.annotations import Annotation, parse_annotation
+from shiftpred.peaks.headings import find_section
+from shiftpred.peaks.text_cleaning import CleanText, clean_text, describe_place, read_place
 from shiftpred.records import Peak, PeakList
 
 __all__ = ["parse_journal_text"]
 
-_PLAIN = str.maketrans(
-    {**dict.fromkeys("‐‑‒–—―−﹣－", "-"), **dict.fromkeys("×✕⨯·∙", "x"), **dict.fromkeys("\u00a0\u2009\u202f\u2002\u2003\u2007\u200a\t\r", " "),
-     **dict.fromkeys("\u200b\ufeff\u2060", ""), "＝": "=", "′": "'", "″": '"', "，": ",", "；": ";", "（": "(", "）": ")",
-     **dict(zip("₀₁₂₃₄₅₆₇₈₉", "0123456789")), **dict(zip("⁰¹²³⁴⁵⁶⁷⁸⁹", "0123456789"))}
+_VALUE = r"[-+]?(?:\d+(?:\.\d+)?|\.\d+)"
+_NUMBER = re.compile(_VALUE)
+_RANGE = re.compile(rf"(?P<high>{_VALUE})(?P<between> ?(?:–|-|~|to\b|\.{{2,3}}|…)[ \n]?)(?P<low>{_VALUE})")
+_TIMES_BEFORE = re.compile(r"(\d{1,2})\s?x\s?(?=\d)")
+_TIMES_BEHIND = re.compile(r"\s?(?:x\s?(\d{1,2})|\(\s?(?:x\s?(\d{1,2})|(\d{1,2})\s?x)\s?\))(?![\d.])")
+_PAIR = re.compile(rf"\s?/\s?({_VALUE})(?!\d)")
+_UNIT = re.compile(r"\s?ppm\b", re.IGNORECASE)
+_FOOTNOTE = re.compile(r"[*†‡§#]{1,3}|\^{1,2}|[abce](?![A-Za-z0-9])")
+_JOINING = re.compile(r"(?:and|&)\b|&", re.IGNORECASE)
+_IDLE = re.compile(r"(?:ppm|δ|then|in|at)\b\.?|δ", re.IGNORECASE)
+_BULLET = re.compile(r"[-–•*]\s+(?=[-.\d])")
+_LABEL_BEFORE = re.compile(
+    r"(?!\d?J)(?:[CH]-?\d{1,3}[a-z]?'{0,2}(?:[,/]\d{1,3}[a-z]?'{0,2})*|[A-Za-z][\w()'-]{0,15})\s?[:=]\s?(?=[-+]?\.?\d)"
 )
-_NUMBER = re.compile(r"[-+]?\d{1,5}(?:\.\d{1,6})?|[-+]?\.\d{1,6}")
-_RANGE = re.compile(r"(-?\d{1,5}(?:\.\d{1,6})?) ?(?:-|to\b|\.\.\.?) ?(-?\d{1,5}(?:\.\d{1,6})?)")
-_MULTIPLICITY = re.compile(
-    r"(?:(?:br\.?|broad|app\.?|apparent|partially resolved|overlapping|unresolved)[ .]{0,2})?"
-    r"(?:singlet|doublet|triplet|quartet|quintet|sextet|septet|heptet|octet|nonet|multiplet|sept|hept|quint|quin|pent|sext|sex|oct|non|hex|"
-    r"[sdtqmp]{1,5}|bs|bd|bt|bm|bq|AB ?q|ABX?|br|broad|dquint|dsept|qd)(?: of (?:doublets?|triplets?|quartets?)){0,3}"
-    r"(?:[ ,]{0,2}(?:br\.?|broad))?",
-    re.IGNORECASE,
+_BARE = re.compile(
+    r"[\s,]{0,3}(?:(?:(?:br|app|apt|broad)\.?\s?)?(?:singlet|doublet|triplet|quartet|quintet|sextet|septet|multiplet|[dtq]{0,3}(?:quint|sept|sext)|"
+    r"[sdtqm]{1,4}|bs|brs)(?![\w=]|\s?=)|\d{1,2}(?:\.\d)?\s?H(?![\w-])|J\s?(?:\([^()]{0,12}\)|[A-Z0-9,-]{0,6})?\s?=?\s?\d[\d., ]*?\s?Hz)"
 )
-_J_LIST = re.compile(
-    r"(?<![A-Za-z])[0-9n]?\s?J\s?(?:\([^()]{0,20}\)|[A-Za-z]{0,3}[A-Za-z0-9',_/-]{0,12})?\s?[=:≈~]\s?~?"
-    r"(\d{1,4}(?:\.\d{1,3})?(?:\s?(?:,|and|&|/|;)\s?\d{1,4}(?:\.\d{1,3})?(?!\s?[HC]\b)(?!\d))*)\s?(?:Hz)?",
+_BARE_CARBON = re.compile(
+    r"[\s,]{0,3}(?:\d{1,2}\s?x\s?)?(?:\d{1,2}\s?C(?![\w-])|(?:[ONS]|Ar)?CH[23]?(?![\w-])|Cq(?!\w)|C=O|CO(?!\w)|C(?![\w(\-=≡]))"
 )
-_LONE_J = re.compile(r"^(?:\dJ)?\s?(?:J\s)?(\d{1,4}(?:\.\d{1,3})?(?:\s?,\s?\d{1,4}(?:\.\d{1,3})?)*)\s?Hz$")
-_COUNT_H = re.compile(r"^(?:(\d{1,2})\s?x\s?)?(\d{1,3}(?:\.\d{1,2})?)\s?H(?:'s)?(?:\s?each)?$")
-_COUNT_C = re.compile(r"^(\d{1,2})\s?x?\s?C$|^x?\s?(\d{1,2})$|^(\d{1,2})\s?x$|^C\s?x\s?(\d{1,2})$")
-_TIMES = re.compile(r"^(\d{1,2})\s?x\s?(C(?:H[1-3]?)?|Ar-?C(?:H)?|[CO]?CH3|NCH3|OCH3|Ar-?H|CH)\b.*$|^(.*?)\s?x\s?(\d{1,2})$")
-_KIND = {"C": 0, "CH": 1, "CH2": 2, "CH3": 3, "Cq": 0, "q C": 0, "quat": 0, "quat.": 0, "quaternary": 0}
-_HEADING_END = re.compile(r"δ|\bdelta\b|\bd\s?=|ppm\)?\s?[:=]|:\s|=\s")
+_DECIMAL_COMMA = re.compile(r"(?<![\d.,])(?<![A-Za-z]-)(?<![A-Za-z])\d{1,3},\d{1,3}(?![\d.])(?!,\d)(?!\s?[HCx]\b)")
+_WIDEST_RANGE = {"13C": 40.0, "1H": 8.0}
+"""ppm; a wider one is a misprint or two shifts joined by a dash (common practice, no source)."""
+_ADVICE_COMMA = "decimal comma, or a list without spaces"
 
 
-def parse_journal_text(text: str, nucleus: str):
-    """Read journal text or plain numbers.
+def parse_journal_text(text: str, nucleus: str) -> tuple[PeakList, list[tuple[str, str, str]]]:
+    """Read journal text, plain numbers, or pairs.
 
     Parameters
     ----------
     text : str
+        A list, a heading with its list, or a whole experimental paragraph with several spectra.
     nucleus : {'13C', '1H'}
+        Which of them to read.
 
     Returns
     -------
     peaks : PeakList
-        With solvent and frequency where the heading states them.
+        With solvent and frequency where the heading states them; `notes` say what was left unread and what was interpreted.
     problems : list of (place, text, reason)
         What could not be read; empty if all of it could.
     """
-    clean = text.translate(_PLAIN).replace("δC", "δ").replace("δH", "δ").replace("δ_C", "δ").replace("δ_H", "δ")
-    clean = re.sub(r" {2,}", " ", clean)
-    start, solvent, frequency, notes, problems = _parse_heading(clean, nucleus)
-    if not problems and _has_decimal_comma(clean[start:]):
-        found = re.search(r"\d+,\d+", clean[start:])
-        return PeakList(nucleus, (), text=text), [(f"character {start + found.start() + 1}", found.group(), "decimal comma, or a list without spaces")]
-    peaks, more = _scan(clean, start, nucleus)
-    peaks = [replace(p, position=k) for k, p in enumerate(peaks, 1)]
-    return PeakList(nucleus, tuple(peaks), solvent, frequency, text, tuple(notes)), problems + more
-
-
-def _has_decimal_comma(body: str) -> bool:
-    outside = re.sub(r"\([^()]*\)", " ", body)
-    if re.search(r"\d\.\d", outside):
-        return False
-    return bool(re.search(r"(?<![\d.])\d{1,3},\d{1,2}(?!\d)", outside))
-
-
-def _parse_heading(text: str, nucleus: str):
-    """Find where the peaks begin, and what the words before them state."""
-    notes: list[str] = []
-    at = re.search(r"\bNMR\b", text[:300], re.IGNORECASE)
-    delta = text.find("δ", 0, 400)
-    if at is None and delta < 0:
-        lead = re.match(r"\s*(?:\((?P<inside>[^()]{0,80}(?:\([^()]{0,20}\)[^()]{0,40})?)\)|ppm)?\s*[:=]?\s*", text)
-        return (lead.end() if lead.group("inside") or "ppm" in lead.group() else 0), *_read_conditions(lead.group("inside") or ""), notes, []
-    if delta >= 0 and (at is None or delta < 400):
-        end = delta + 1
-    else:
-        end = at.end()
-        bracket = re.match(r"[^0-9(]{0,20}\(", text[end:])
-        if bracket:
-            end = _close(text, end + bracket.end() - 1)
-        stop = re.match(r"[^0-9]{0,30}?(?:[:=]|ppm\)?[:,]?)", text[end:])
-        end += stop.end() if stop else 0
-    heading = text[:end]
-    rest = re.match(r"\s*(?:\(\s*(?:ppm|δ)[^()]{0,12}\)|/\s*ppm|\bppm\b|in ppm)?\s*(?:[:=]|\bppm\b)?\s*", text[end:])
-    end += rest.end()
-    follow = re.match(r"\(([^()]{0,60}(?:\([^()]{0,20}\)[^()]{0,40})?)\)\s*[:=]?\s*", text[end:])
-    if follow and not re.match(r"\s*\d+(?:\.\d+)?\s*[,)]?$", follow.group(1)) and re.search(r"MHz|CD|DMSO|D2O|MeOD|C6D6|acetone|chloroform", follow.group(1)):
-        heading += follow.group(1)
-        end += follow.end()
-    stated = re.search(r"\b(13C|1H|C-?13|H-?1)\b|\b(13|1)\s?\{?C|13C", heading)
-    if stated:
-        said = "13C" if "13" in stated.group() else "1H"
-        if said != nucleus:
-            return end, None, None, notes, [("heading", heading.strip()[:60], f"the heading says {said}, but the list was given as {nucleus}")]
-    return end, *_read_conditions(heading), notes, []
-
-
-def _read_conditions(heading: str):
-    solvent = frequency = None
-    found = re.search(r"(\d{2,4}(?:\.\d{1,3})?)\s?M(?:Hz|HZ|hz)", heading)
-    if found:
-        frequency = float(found.group(1))
-    for part in re.split(r"[,;:\s]\s*|(?<=\w)\)\s|(?<!\w)\((?!CD3)", heading):
-        part = part.strip(" ()δ.")
-        if not part or part.lower() in ("nmr", "d", "h2o", "water", "ppm"):
-            continue
-        for candidate in (part, "(" + part if part.startswith("CD3)") else part):
-            try:
-                solvent = solvent or normalise_solvent(candidate)
-            except SettingError:
-                continue
-    return solvent, frequency
-
-
-def _close(text: str, at: int) -> int:
-    """Return the place behind the bracket that closes the one at `at`."""
-    depth = 0
-    for k in range(at, min(len(text), at + 400)):
-        depth += text[k] in "([{"
-        depth -= text[k] in ")]}"
-        if depth == 0:
-            return k + 1
-    return -1
-
-
-def _scan(text: str, at: int, nucleus: str):
-    peaks: list[Peak] = []
-    problems: list[tuple[str, str, str]] = []
-    n = len(text)
-    while at < n:
-        if text[at] in " ,;.\n&|" and not re.match(r"\.\d", text[at:at + 2]):
-            at += 1
-            continue
-        word = re.match(r"(?:and|ppm|δ|then|or)\b\.?", text[at:at + 8])
-        if word and text[at:at + 2] != "or" or word and word.group().startswith("δ"):
-            at += word.end()
-            continue
-        times = re.match(r"(\d{1,2})\s?x\s(?=\d)", text[at:at + 8])
-        count = None
-        if times:
-            count, at = int(times.group(1)), at + times.end()
-        between = _RANGE.match(text, at)
-        single = None if between else _NUMBER.match(text, at)
-        if between is None and single is None:
-            stop = re.search(r"[,;\n]", text[at:at + 200])
-            end = at + (stop.start() if stop else min(200, n - at))
-            end = max(end, at + 1)
-            problems.append((f"character {at + 1}", text[at:end].strip(), "not a number"))
-            at = end
-            continue
-        begin = at
-        ends = sorted(float(x) for x in between.groups()) if between else [float(single.group())] * 2
-        at = (between or single).end()
-        peak = Peak(nucleus, sum(ends) / 2, ends[0], ends[1], carbons=count if nucleus == "13C" else None)
-        at, peak, trouble = _read_attachments(text, at, peak)
-        if trouble:
-            problems.append((f"character {begin + 1}", text[begin:at].strip(), trouble))
-        elif at < n and (text[at].isalnum() or text[at] in "+-*/=<>^$#%\"'"):
-            stop = re.search(r"[,;\n]", text[at:at + 200])
-            end = at + (stop.start() if stop else min(200, n - at))
-            problems.append((f"character {begin + 1}", text[begin:end].strip(), "something after the number that is not understood"))
-            at = max(end, at + 1)
-        peaks.append(replace(peak, text=text[begin:at].strip()))
-    return peaks, problems
-
-
-def _read_attachments(text: str, at: int, peak: Peak):
-    """Read what belongs to a number: '/1', '/4.38', 'x 2', 'ppm', one or several brackets."""
-    pair = re.match(r"\s?/\s?(-?\d{1,3}(?:\.\d+)?)(?![\d])", text[at:at + 14])
-    if pair:
-        at += pair.end()
-        value = pair.group(1)
-        if "." in value:
-            peak = replace(peak, pair_ppm=float(value))
-        elif peak.nucleus == "13C" and value in ("0", "1", "2", "3"):
-            peak = replace(peak, attached_h=int(value))
+    clean = clean_text(text)
+    section = find_section(clean.text, nucleus)
+    problems = [(*read_place(clean, text, begin, end), reason) for begin, end, reason in section.problems]
+    notes = list(section.notes)
+    notes += [f"not read: '{_shorten(read_place(clean, text, begin, end)[1])}'" for begin, end in section.unread]
+    if problems:
+        return PeakList(nucleus, (), section.solvent, section.frequency_mhz, text, tuple(notes)), problems
+    body = clean.text[: section.end]
+    problems += _find_decimal_commas(clean, text, section.begin, section.end)
+    if not problems:
+        numbered = _find_line_numbers(body, section.begin)
+        table = None if numbered else _find_table_without_heading(body, section.begin)
+        if table is not None:
+            place = describe_place(text, clean.origin[table])
+            line = body[table : (body + "\n").index("\n", table)].strip()
+            reason = "several numbers on each line without separators: a table without a heading"
+            problems.append((place, line, reason))
         else:
-            return at, peak, "'/' must be followed by the number of hydrogens (0 to 3) or by the other nucleus' shift with a decimal point"
-    times = re.match(r"\s?(?:x\s?(\d{1,2})|\((?:x\s?(\d{1,2})|(\d{1,2})\s?x)\))(?!\.?\d)", text[at:at + 10])
-    if times:
-        at += times.end()
-        count = int(next(g for g in times.groups() if g))
-        peak = replace(peak, carbons=count) if peak.nucleus == "13C" else peak
-    unit = re.match(r"\s?ppm\b", text[at:at + 5])
-    at += unit.end() if unit else 0
-    while True:
-        bracket = re.match(r"\s?[(\[]", text[at:at + 2])
-        if not bracket:
-            return at, peak, ""
-        begin = at + bracket.end() - 1
-        end = _close(text, begin)
-        if end < 0:
-            stop = re.search(r"\n|$", text[at:at + 200])
-            return at + stop.start(), peak, "a bracket that is not closed"
-        peak = _read_bracket(text[begin + 1 : end - 1], peak)
-        at = end
+            scanner = _Scanner(clean, text, section.begin, section.end, nucleus, numbered)
+            scanner.run()
+            problems, notes = scanner.problems, notes + scanner.notes
+            if numbered:
+                notes.append("the counting numbers at the beginning of the lines were left out")
+            peaks = _orient_pairs(scanner.peaks, nucleus, notes)
+            peaks = _use_multiplicity_letters(peaks, nucleus, notes)
+            peaks = [replace(p, position=k) for k, p in enumerate(peaks, 1)]
+            return PeakList(nucleus, tuple(peaks), section.solvent, section.frequency_mhz, text, tuple(notes)), problems
+    return PeakList(nucleus, (), section.solvent, section.frequency_mhz, text, tuple(notes)), problems
 
 
-def _read_bracket(inside: str, peak: Peak) -> Peak:
-    """Take multiplicity, couplings, counts and kind of carbon from a bracket; labels are kept in the peak's text only."""
-    couplings: list[float] = []
-
-    def take(found):
-        couplings.extend(float(x) for x in re.findall(r"\d+(?:\.\d+)?", found.group(1)))
-        return " "
-
-    rest = _J_LIST.sub(take, inside)
-    for item in _split(rest):
-        lone = _LONE_J.match(item)
-        if lone:
-            couplings.extend(float(x) for x in lone.group(1).split(","))
-            continue
-        hydrogens, carbons = _COUNT_H.match(item), _COUNT_C.match(item)
-        if hydrogens and peak.nucleus == "1H":
-            peak = replace(peak, hydrogens=float(hydrogens.group(2)) * int(hydrogens.group(1) or 1))
-        elif carbons and peak.nucleus == "13C" and not (carbons.group(2) and not item.startswith("x")):
-            peak = replace(peak, carbons=int(next(g for g in carbons.groups() if g)))
-        elif item in _KIND and peak.nucleus == "13C":
-            peak = replace(peak, attached_h=_KIND[item])
-        elif peak.multiplicity is None and _MULTIPLICITY.fullmatch(item.strip(" .")):
-            peak = replace(peak, multiplicity=" ".join(item.strip(" .").split()))
-        else:
-            peak = _read_times(item, peak)
-    return replace(peak, couplings_hz=peak.couplings_hz + tuple(couplings)) if couplings else peak
+def _shorten(text: str, longest: int = 60) -> str:
+    text = " ".join(text.split())
+    return text if len(text) <= longest else text[: longest - 1] + "…"
 
 
-def _read_times(item: str, peak: Peak) -> Peak:
-    """'2 × CH3', 'CH × 2', '2 × OCH3': a count and perhaps the kind of carbon; anything else is a label."""
-    found = _TIMES.match(item)
+def _find_decimal_commas(clean: CleanText, given: str, begin: int, end: int) -> list[tuple[str, str, str]]:
+    """Two numbers joined by a comma without a space, where the other separators are not of this kind, may be one number."""
+    body, depth = [], 0
+    for letter in clean.text[begin:end]:  # brackets blanked, places kept
+        depth += letter in "([{"
+        body.append(" " if depth else letter)
+        depth -= letter in ")]}" and depth > 0
+    outside = "".join(body)
+    found = list(_DECIMAL_COMMA.finditer(outside))
     if not found:
-        return peak
-    count = int(found.group(1) or found.group(4))
-    what = (found.group(2) or found.group(3) or "").strip()
-    if peak.nucleus == "13C":
-        peak = replace(peak, carbons=count)
-        kind = re.search(r"C(H[23]?)?$", what)
-        if kind and what:
-            peak = replace(peak, attached_h=_KIND["C" + (kind.group(1) or "")]) if kind.group(1) else peak
-    return peak
+        return []
+    if re.search(r"\d\.\d", outside) and not re.search(r"\d[ )]?(?:,\s|;|\n)", outside):
+        return []
+    return [(*read_place(clean, given, begin + m.start(), begin + m.end()), _ADVICE_COMMA) for m in found]
 
 
-def _split(text: str) -> list[str]:
-    parts, depth, current = [], 0, ""
-    for letter in text:
-        depth += (letter in "([") - (letter in ")]")
-        if letter in ",;" and depth == 0:
-            parts.append(current)
-            current = ""
+def _find_line_numbers(body: str, begin: int) -> dict[int, int]:
+    """Return place → place behind it of counting numbers 1, 2, 3 … that head every line; empty if there are none."""
+    found, expected = {}, 1
+    at = begin
+    for line in body[begin:].split("\n"):
+        if line.strip():
+            match = re.match(r"\s*[(\[]?(\d{1,4})(?:[.):\]]\s+|\s*[\t:]\s*|\s+)(?=[-+]?\.?\d)", line)
+            if match is None or int(match.group(1)) != expected:
+                return {}
+            found[at + len(line) - len(line.lstrip())] = at + match.end()
+            expected += 1
+        at += len(line) + 1
+    return found if len(found) >= 3 else {}
+
+
+def _find_table_without_heading(body: str, begin: int) -> int | None:
+    """Return the place of the first line if every line holds the same number of bare numbers and they are no running list."""
+    lines = [(m.start(), m.group()) for m in re.finditer(r"[^\n]+", body[begin:]) if m.group().strip()]
+    if len(lines) < 2:
+        return None
+    rows = []
+    for _, line in lines:
+        if not re.fullmatch(rf"\s*{_VALUE}(?:[\s,;]+{_VALUE})+\s*", line):
+            return None
+        rows.append([float(x) for x in _NUMBER.findall(line)])
+    if len({len(row) for row in rows}) != 1:
+        return None
+    running = [x for row in rows for x in row]
+    falling = all(a >= b for a, b in zip(running, running[1:]))
+    rising = all(a <= b for a, b in zip(running, running[1:]))
+    return None if falling or rising else begin + lines[0][0]
+
+
+class _Scanner:
+    """One walk through the text from `begin` to `end`."""
+
+    def __init__(self, clean: CleanText, given: str, begin: int, end: int, nucleus: str, numbered: dict[int, int]):
+        self.clean, self.given, self.nucleus, self.numbered = clean, given, nucleus, numbered
+        self.text, self.at, self.end = clean.text[:end], begin, end
+        self.peaks: list[Peak] = []
+        self.annotated: list[bool] = []
+        """For each peak, whether anything stood beside it."""
+        self.problems: list[tuple[str, str, str]] = []
+        self.notes: list[str] = []
+        self.closing = _match_brackets(self.text)
+
+    def run(self) -> None:
+        while self.at < self.end:
+            if not self._skip_separators():
+                self._read_peak()
+
+    def _skip_separators(self) -> bool:
+        """Step over one separator; False where a peak must begin."""
+        text, at = self.text, self.at
+        if at in self.numbered:
+            self.at = self.numbered[at]
+            return True
+        at_line_start = not text[:at].rsplit("\n", 1)[-1].strip()
+        if at_line_start and (bullet := _BULLET.match(text, at)):
+            self.at = bullet.end()
+            return True
+        if text[at] in " \n,;|•" or (text[at] == "." and not re.match(r"\.\d", text[at : at + 2])):
+            self.at += 1
+            return True
+        for pattern in (_JOINING, _IDLE, _LABEL_BEFORE):
+            found = pattern.match(text, at, self.end)
+            if found:
+                self.at = found.end()
+                return True
+        return False
+
+    def _read_peak(self) -> None:
+        text, begin = self.text, self.at
+        times = _TIMES_BEFORE.match(text, begin)
+        start = times.end() if times else begin
+        between, single = _RANGE.match(text, start), _NUMBER.match(text, start)
+        if single is None:
+            self._refuse(begin, self._next_separator(begin), "not a number")
+            return
+        trouble = ""
+        if between:
+            between, trouble = self._judge_range(between)
+        if between:
+            ends = sorted((float(between.group("high")), float(between.group("low"))))
+            self.at = between.end()
         else:
-            current += letter
-    return [p.strip() for p in [*parts, current] if p.strip()]
+            ends = [float(single.group())] * 2
+            self.at = single.end()
+        peak = Peak(self.nucleus, (ends[0] + ends[1]) / 2 if between else ends[0], ends[0], ends[1])
+        peak, found, more = self._read_attachments(peak)
+        trouble = trouble or more
+        if not trouble and self.at < self.end:
+            letter = self.text[self.at]
+            if letter == "." and re.match(r"\.\d", text[self.at : self.at + 2]):
+                trouble = "two decimal points in one number"
+            elif letter in "-–" and re.match(r".\s?\d", text[self.at : self.at + 3]):
+                trouble = "a range with more than two ends"
+            elif letter.isalnum() or letter in "+-–*/=<>^$#%\"'~:()[]{}":
+                trouble = "something after the number that is not understood"
+            if trouble:
+                self.at = self._next_separator(self.at)
+        if trouble:
+            self._refuse(begin, self.at, trouble)
+            return
+        if times and self.nucleus == "13C":
+            found.carbons = found.carbons or int(times.group(1))
+        elif times:
+            self._refuse(begin, self.at, "a count before a 1H shift; write the hydrogens in a bracket, '2.35 (6H)'")
+            return
+        self._store(peak, found, begin)
+
+    def _judge_range(self, between: re.Match) -> tuple[re.Match | None, str]:
+        """Tell '7.54–7.42' from '0.12 -0.05' (two shifts, the second negative)."""
+        sign = between.group("between")
+        first, second = float(between.group("high")), float(between.group("low"))
+        if sign.startswith(" ") and sign.endswith("-"):  # a space before the hyphen and none behind it
+            if second < 0.5 or abs(first - second) > (1.0 if self.nucleus == "1H" else 5.0):
+                return None, ""
+            return between, "a range or a negative shift? write '7.54-7.42' without the space, or put a comma"
+        if "." in between.group("high") and "." not in between.group("low") and second > first:
+            return between, "an abbreviated range; write both ends in full, '7.54-7.42'"
+        if abs(first - second) > _WIDEST_RANGE[self.nucleus]:
+            return between, f"a range wider than {_WIDEST_RANGE[self.nucleus]:g} ppm; separate single shifts"
+        return between, ""
+
+    def _read_attachments(self, peak: Peak) -> tuple[Peak, Annotation, str]:
+        """Read what belongs to a number: a footnote mark, '/1', '/4.38', 'x 2', 'ppm', brackets, bare words."""
+        text, found = self.text, Annotation()
+        mark = _FOOTNOTE.match(text, self.at, self.end)
+        if mark:
+            self.at = mark.end()
+        while pair := _PAIR.match(text, self.at, self.end):
+            value = pair.group(1)
+            self.at = pair.end()
+            if "." in value and peak.pair_ppm is None:
+                peak = replace(peak, pair_ppm=float(value))
+            elif self.nucleus == "13C" and value in ("0", "1", "2", "3") and found.attached_h is None:
+                found.attached_h = int(value)
+            else:
+                other = "1H" if self.nucleus == "13C" else "13C"
+                kinds = "the number of hydrogens (0 to 3) or by " if self.nucleus == "13C" else ""
+                return peak, found, f"'/' must be followed by {kinds}the {other} shift with a decimal point"
+        times = _TIMES_BEHIND.match(text, self.at, self.end)
+        if times:
+            self.at = times.end()
+            if self.nucleus == "1H":
+                return peak, found, "a count behind a 1H shift; write the hydrogens in a bracket, '2.35 (6H)'"
+            found.carbons = int(next(g for g in times.groups() if g))
+        unit = _UNIT.match(text, self.at, self.end)
+        self.at = unit.end() if unit else self.at
+        bare = _BARE if self.nucleus == "1H" else re.compile(f"(?:{_BARE_CARBON.pattern})|(?:{_BARE.pattern})")
+        while self.at < self.end:
+            bracket = re.compile(r"\s*[(\[]").match(text, self.at, self.end)
+            if bracket:
+                opening = bracket.end() - 1
+                closing = self.closing.get(opening)
+                if closing is None:
+                    self.at = min(self.end, max(self._next_line(self.at), self.at + 1))
+                    return peak, found, "a bracket that is not closed"
+                found.merge(parse_annotation(text[opening + 1 : closing], self.nucleus))
+                self.at = closing + 1
+                continue
+            word = bare.match(text, self.at, self.end)
+            if word is None:
+                break
+            found.merge(parse_annotation(word.group().strip(" ,\n"), self.nucleus))
+            self.at = word.end()
+        return peak, found, found.problem
+
+    def _store(self, peak: Peak, found: Annotation, begin: int) -> None:
+        _, written = read_place(self.clean, self.given, begin, self.at)
+        bare = found == Annotation()
+        peak = replace(
+            peak,
+            hydrogens=found.hydrogens if self.nucleus == "1H" else None,
+            attached_h=found.attached_h,
+            carbons=found.carbons,
+            multiplicity=found.multiplicity,
+            couplings_hz=tuple(found.couplings_hz),
+            text=written.rstrip(" ,;"),
+        )
+        self.peaks.append(peak)
+        self.annotated.append(not bare)
+        number = len(self.peaks)
+        unclear = [x for x in found.labels if re.search(r"\bHz\b|(?<![A-Za-z])J\b", x)]
+        if unclear:
+            self.notes.append(f"peak {number}: '{unclear[0]}' was not understood and is kept as text only")
+        if self.nucleus == "1H" and (found.each or found.shared_by > 1):
+            self._share(number - 1, found)
+
+    def _share(self, last: int, found: Annotation) -> None:
+        """Give one bracket to all the shifts it stands for: '2.30, 2.28 (2 s, 6H)', '2.30 and 2.28 (s, each 3H)'."""
+        group = [last]
+        while group[0] > 0 and not self.annotated[group[0] - 1] and (found.each or len(group) < found.shared_by):
+            if found.shared_by > 1 and len(group) == found.shared_by:
+                break
+            group.insert(0, group[0] - 1)
+            if found.each and found.shared_by == 1 and not self._joined(group[0]):
+                group.pop(0)
+                break
+        if len(group) == 1:
+            return
+        hydrogens = found.hydrogens if found.each or found.hydrogens is None else found.hydrogens / len(group)
+        for k in group:
+            self.peaks[k] = replace(
+                self.peaks[k], hydrogens=hydrogens, multiplicity=found.multiplicity, couplings_hz=tuple(found.couplings_hz)
+            )
+            self.annotated[k] = True
+        self.notes.append(f"peaks {group[0] + 1} to {last + 1} share one bracket: '{_shorten(self.peaks[last].text)}'")
+
+    def _joined(self, k: int) -> bool:
+        """Say whether peak `k` and the next stand beside each other with 'and', '&', ',' or '/' alone between them."""
+        return not self.annotated[k]
+
+    def _refuse(self, begin: int, end: int, reason: str) -> None:
+        self.at = max(end, begin + 1)
+        self.problems.append((*read_place(self.clean, self.given, begin, self.at), reason))
+
+    def _next_separator(self, at: int) -> int:
+        stop = re.compile(r"[,;\n]").search(self.text, at + 1, min(self.end, at + 200))
+        return stop.start() if stop else min(self.end, at + 200)
+
+    def _next_line(self, at: int) -> int:
+        stop = self.text.find("\n", at, self.end)
+        return stop if stop >= 0 else self.end
+
+
+def _match_brackets(text: str) -> dict[int, int]:
+    """Return opening → closing place of every bracket that is closed, of any kind."""
+    pairs, stack = {"(": ")", "[": "]", "{": "}"}, []
+    out = {}
+    for at, letter in enumerate(text):
+        if letter in pairs:
+            stack.append((letter, at))
+        elif letter in ")]}":
+            if stack and pairs[stack[-1][0]] == letter:
+                out[stack.pop()[1]] = at
+            elif letter == ")":  # a stray inner bracket must not swallow the rest of the list
+                while stack and stack[-1][0] != "(":
+                    stack.pop()
+                if stack:
+                    out[stack.pop()[1]] = at
+    return out
+
+
+def _orient_pairs(peaks: list[Peak], nucleus: str, notes: list[str]) -> list[Peak]:
+    """Turn pairs written the other way round, if all of them make sense only so."""
+    pairs = [p for p in peaks if p.pair_ppm is not None and not p.is_range]
+    if not pairs:
+        return peaks
+    own = [p.shift_ppm for p in pairs]
+    other = [p.pair_ppm for p in pairs]
+    hydrogens, carbons = (other, own) if nucleus == "13C" else (own, other)
+    if max(hydrogens) > 25 and max(carbons) <= 25:
+        notes.append(f"the pairs were read as {'1H/13C' if nucleus == '13C' else '13C/1H'}: only so do they make sense")
+        peaks = [
+            p
+            if p.pair_ppm is None
+            else replace(p, shift_ppm=p.pair_ppm, lower_ppm=p.pair_ppm, upper_ppm=p.pair_ppm, pair_ppm=p.shift_ppm)
+            for p in peaks
+        ]
+    return peaks
+
+
+def _use_multiplicity_letters(peaks: list[Peak], nucleus: str, notes: list[str]) -> list[Peak]:
+    """Take s, d, t, q of an off-resonance 13C list as hydrogen counts, if every line has one and no coupling is stated."""
+    if nucleus != "13C" or not peaks:
+        return peaks
+    letters = [p.multiplicity for p in peaks]
+    if any(x not in ("s", "d", "t", "q") for x in letters) or any(p.couplings_hz or p.attached_h is not None for p in peaks):
+        return peaks
+    if len(set(letters)) >= 3:
+        notes.append("every line has one of the letters s, d, t, q and none a coupling: read as C, CH, CH2, CH3")
+        return [replace(p, attached_h="sdtq".index(p.multiplicity)) for p in peaks]
+    if set(letters) != {"s"}:
+        notes.append("letters s, d, t, q without couplings were not taken as hydrogen counts; write '128.4/1' if they are")
+    return peaks

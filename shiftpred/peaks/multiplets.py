@@ -15,7 +15,10 @@ _NARROWEST_HZ = 1.5
 _REGULAR = 0.2
 """Spacings of one multiplet differ by at most this share, or by 0.5 Hz."""
 _NAMES = {2: "d", 3: "t", 4: "q", 5: "quint", 6: "sext", 7: "sept"}
-COUPLING_RANGES_HZ = {"F": ((140.0, 320.0), (10.0, 50.0), (2.0, 14.0), (0.5, 5.0)), "P": ((5.0, 200.0), (1.0, 30.0), (1.0, 20.0), (0.5, 5.0))}
+COUPLING_RANGES_HZ = {
+    "F": ((140.0, 320.0), (10.0, 50.0), (2.0, 14.0), (0.5, 5.0)),
+    "P": ((5.0, 200.0), (1.0, 30.0), (1.0, 20.0), (0.5, 5.0)),
+}
 """Usual |J(C,X)| over one, two, three and four bonds (textbook ranges, from memory)."""
 
 
@@ -73,7 +76,9 @@ def require_grouped(peaks: PeakList, frequency_mhz: float | None) -> PeakList:
         return peaks
     if frequency is None:
         raise PeakError(
-            "--h1", "lines at regular distances, as if a multiplet had been picked line by line", "multiplet centres, or the frequency",
+            "--h1",
+            "lines at regular distances, as if a multiplet had been picked line by line",
+            "multiplet centres, or the frequency",
             "give --frequency 400 (the spectrometer's 1H frequency in MHz), or the multiplets as '4.12 (q, J = 7.1 Hz, 2H)'",
         )
     return group_multiplets(peaks, frequency)
@@ -109,7 +114,12 @@ def group_multiplets(peaks: PeakList, frequency_mhz: float) -> PeakList:
         name = _NAMES.get(len(values), "m")
         first = peaks.peaks[min(members)]
         joined[min(members)] = replace(
-            first, shift_ppm=centre, lower_ppm=centre, upper_ppm=centre, multiplicity=name, couplings_hz=(round(spacing, 1),),
+            first,
+            shift_ppm=centre,
+            lower_ppm=centre,
+            upper_ppm=centre,
+            multiplicity=name,
+            couplings_hz=(round(spacing, 1),),
             text=", ".join(peaks.peaks[k].text or f"{peaks.peaks[k].shift_ppm:g}" for k in sorted(members)),
         )
         gone.update(k for k in members if k != min(members))
@@ -120,7 +130,9 @@ def group_multiplets(peaks: PeakList, frequency_mhz: float) -> PeakList:
     return replace(peaks, peaks=tuple(kept), notes=tuple(notes))
 
 
-def pair_doublets(shifts: list[float], frequency_mhz_13c: float, partner: str = "F", tolerance_hz: float = 0.0) -> list[DoubletPair]:
+def pair_doublets(
+    shifts: list[float], frequency_mhz_13c: float, partner: str = "F", tolerance_hz: float = 0.0
+) -> list[DoubletPair]:
     """List the pairs of carbon lines that may be doublets by fluorine or phosphorus.
 
     Parameters
@@ -146,7 +158,9 @@ def pair_doublets(shifts: list[float], frequency_mhz_13c: float, partner: str = 
             if coupling > COUPLING_RANGES_HZ[partner][0][1] + tolerance_hz:
                 break
             bonds = tuple(
-                n for n, (low, high) in enumerate(COUPLING_RANGES_HZ[partner], 1) if low - tolerance_hz <= coupling <= high + tolerance_hz
+                n
+                for n, (low, high) in enumerate(COUPLING_RANGES_HZ[partner], 1)
+                if low - tolerance_hz <= coupling <= high + tolerance_hz
             )
             if bonds:
                 out.append(DoubletPair(i, j, (shifts[i] + shifts[j]) / 2, coupling, bonds))

@@ -11,12 +11,35 @@ from importlib import resources
 from shiftpred.errors import SettingError, quote
 
 __all__ = [
-    "SolventLine", "is_deuterated_exchange", "load_table", "normalise_solvent", "reference_line", "solvent_lines", "water_line",
+    "SolventLine",
+    "is_deuterated_exchange",
+    "load_table",
+    "normalise_solvent",
+    "reference_line",
+    "solvent_lines",
+    "water_line",
 ]
 
 _SPELLINGS = {
-    "CDCl3": ("cdcl3", "chloroformd", "chloroformd1", "dchloroform", "deuterochloroform", "chloroform", "chcl3", "d1chloroform"),
-    "DMSO-d6": ("dmsod6", "d6dmso", "dmso", "cd32so", "dimethylsulfoxided6", "hexadeuterodimethylsulfoxide", "d6dimethylsulfoxide"),
+    "CDCl3": (
+        "cdcl3",
+        "chloroformd",
+        "chloroformd1",
+        "dchloroform",
+        "deuterochloroform",
+        "chloroform",
+        "chcl3",
+        "d1chloroform",
+    ),
+    "DMSO-d6": (
+        "dmsod6",
+        "d6dmso",
+        "dmso",
+        "cd32so",
+        "dimethylsulfoxided6",
+        "hexadeuterodimethylsulfoxide",
+        "d6dimethylsulfoxide",
+    ),
     "CD3OD": ("cd3od", "meod", "methanold4", "d4methanol", "meodd4", "d4meod", "methanol", "meoh", "meohd4"),
     "acetone-d6": ("acetoned6", "d6acetone", "acetone", "cd32co", "cd3cocd3"),
     "C6D6": ("c6d6", "benzened6", "d6benzene", "benzene"),
@@ -74,7 +97,10 @@ def normalise_solvent(text: str) -> str:
     if key in _LOOKUP:
         return _LOOKUP[key]
     raise SettingError(
-        "solvent", quote(text), "one of " + ", ".join(_SPELLINGS), "--solvent CDCl3, or leave the solvent out if it is not known"
+        "solvent",
+        quote(text),
+        "one of " + ", ".join(_SPELLINGS),
+        "--solvent CDCl3, or leave the solvent out if it is not known",
     )
 
 

@@ -40,7 +40,12 @@ PROTON = [
     ("1H NMR (400 MHz, CDCl3) δ 8.04 (dd, J = 8.2, 1.3 Hz, 2H), 7.26 (s)", "CDCl3", 400, [8.04, 7.26]),
     ("¹H NMR (500 MHz, CDCl₃): δ 7.31 (d, ³J = 8.0 Hz, 2H, Ar-H), 3.80 (s, 3H, OCH₃).", "CDCl3", 500, [7.31, 3.80]),
     ("1H-NMR (CDCl3, 300 MHz) δ: 7.4-7.3 (m, 5H, Ph), 5.1 (s, 2H, CH2Ph)", "CDCl3", 300, [(7.3, 7.4), 5.1]),
-    ("1H NMR (600 MHz, DMSO-d6) δ 9.65 (s, 1H, NH), 9.14 (s, 1H, OH), 7.34 (d, J=8.8 Hz, 2H)", "DMSO-d6", 600, [9.65, 9.14, 7.34]),
+    (
+        "1H NMR (600 MHz, DMSO-d6) δ 9.65 (s, 1H, NH), 9.14 (s, 1H, OH), 7.34 (d, J=8.8 Hz, 2H)",
+        "DMSO-d6",
+        600,
+        [9.65, 9.14, 7.34],
+    ),
     ("δH (400 MHz; CD3OD) 7.02 (1 H, d, J 8.5, H-5), 3.87 (3 H, s, OMe)", "CD3OD", 400, [7.02, 3.87]),
     ("1H NMR (250 MHz, acetone-d6): 2.10 (3H, s)", "acetone-d6", 250, [2.10]),
     ("1H NMR (400 MHz, CDCl3) δ 7.3 (br. s., 1 H) 3.3 (s, 3 H)", "CDCl3", 400, [7.3, 3.3]),
@@ -48,7 +53,12 @@ PROTON = [
     ("1H NMR (CDCl3) δ −0.12 (s, 9H), 0.05 (s, 6H)", "CDCl3", None, [-0.12, 0.05]),
     ("7.34 (2H), 6.68 (2H), 1.98 (3H)", None, None, [7.34, 6.68, 1.98]),
     ("2.96, 2.88, 8.02", None, None, [2.96, 2.88, 8.02]),
-    ("1H NMR (400 MHz, CD3CN) δ 4.05 (ddd, J = 12.0, 6.1, 2.2 Hz, 1H), 1.55 (quint, J = 7.0 Hz, 2H)", "CD3CN", 400, [4.05, 1.55]),
+    (
+        "1H NMR (400 MHz, CD3CN) δ 4.05 (ddd, J = 12.0, 6.1, 2.2 Hz, 1H), 1.55 (quint, J = 7.0 Hz, 2H)",
+        "CD3CN",
+        400,
+        [4.05, 1.55],
+    ),
     ("1H NMR (400 MHz, D2O) δ 3.78 (q, J(H,H) = 7.2 Hz, 1H), 1.48 (d, 3JHH = 7.2 Hz, 3H)", "D2O", 400, [3.78, 1.48]),
     ("1H NMR (400 MHz, CDCl3) δ 2.35 (s, 2 × 3H), 1.22 (d, J = 6.9 Hz, 6H, CH(CH3)2)", "CDCl3", 400, [2.35, 1.22]),
     ("1H NMR (400 MHz, pyridine-d5) δ 8.71 to 8.65 (m, 1H)", "pyridine-d5", 400, [(8.65, 8.71)]),
@@ -74,7 +84,9 @@ def check(found, solvent, frequency, shifts):
 
 
 def test_what_a_bracket_says():
-    one, two, three = parse_peaks("8.04 (dd, J = 8.2, 1.3 Hz, 2H), 2.35 (s, 2 × 3H), 7.0 (d, 3JHH = 8.0 Hz, 1H, H-3,5)", "1H").peaks
+    one, two, three = parse_peaks(
+        "8.04 (dd, J = 8.2, 1.3 Hz, 2H), 2.35 (s, 2 × 3H), 7.0 (d, 3JHH = 8.0 Hz, 1H, H-3,5)", "1H"
+    ).peaks
     assert (one.multiplicity, one.couplings_hz, one.hydrogens) == ("dd", (8.2, 1.3), 2)
     assert two.hydrogens == 6 and three.couplings_hz == (8.0,) and three.hydrogens == 1
 
@@ -89,23 +101,26 @@ def test_pairs():
     assert [p.pair_ppm for p in parse_peaks("60.9/4.38, 14.3/1.39", "13C").peaks] == [4.38, 1.39]
 
 
-@pytest.mark.parametrize("nucleus, text, message", [
-    ("1H", "7,26 4,38", "decimal comma.*Try: write 7.26"),
-    ("13C", "166,6; 132,8", "decimal comma"),
-    ("13C", "166.6 abc, 12.0", "character 7.*'abc': not a number"),
-    ("13C", "77.2 (t, J = 32", "bracket that is not closed"),
-    ("13C", "128.4/7", "number of hydrogens"),
-    ("1H", "13C NMR (CDCl3) δ 7.2", "heading says 13C"),
-    ("13C", "", "empty list"),
-    ("13C", "  \n ", "empty list"),
-    ("13C", "none", "not a number"),
-    ("1H", "166.6, 132.8, 60.9", "look like a 13C list.*--c13"),
-    ("13C", "7.3, 3.3, 1.2, 0.9", "look like a 1H list.*--h1"),
-    ("1H", "2904.3, 1700.1", "Hz instead of ppm.*frequency"),
-    ("13C", "512.0", "Hz instead of ppm"),
-    ("13C", "missing.txt", "no such file"),
-    ("1H", "7.2 7.2kHz", "not understood"),
-])
+@pytest.mark.parametrize(
+    "nucleus, text, message",
+    [
+        ("1H", "7,26 4,38", "decimal comma.*Try: write 7.26"),
+        ("13C", "166,6; 132,8", "decimal comma"),
+        ("13C", "166.6 abc, 12.0", "character 7.*'abc': not a number"),
+        ("13C", "77.2 (t, J = 32", "bracket that is not closed"),
+        ("13C", "128.4/7", "number of hydrogens"),
+        ("1H", "13C NMR (CDCl3) δ 7.2", "heading says 13C"),
+        ("13C", "", "empty list"),
+        ("13C", "  \n ", "empty list"),
+        ("13C", "none", "not a number"),
+        ("1H", "166.6, 132.8, 60.9", "look like a 13C list.*--c13"),
+        ("13C", "7.3, 3.3, 1.2, 0.9", "look like a 1H list.*--h1"),
+        ("1H", "2904.3, 1700.1", "Hz instead of ppm.*frequency"),
+        ("13C", "512.0", "Hz instead of ppm"),
+        ("13C", "missing.txt", "no such file"),
+        ("1H", "7.2 7.2kHz", "not understood"),
+    ],
+)
 def test_what_cannot_be_read_is_named(nucleus, text, message):
     with pytest.raises(PeakError, match=message) as caught:
         parse_peaks(text, nucleus)
@@ -155,17 +170,33 @@ numbers = st.integers(1, 2200).map(lambda k: k / 10)
 
 
 @settings(max_examples=150, deadline=None)
-@given(st.lists(st.builds(
-    lambda shift, width, j, c, h: Peak("13C", shift, shift, shift, couplings_hz=tuple(j), carbons=c, attached_h=h, multiplicity="d" if j else None),
-    numbers, st.just(0), st.lists(st.integers(1, 300).map(float), max_size=2), st.sampled_from([None, 2, 3]), st.sampled_from([None, 0, 1, 2, 3]),
-), min_size=1, max_size=8))
+@given(
+    st.lists(
+        st.builds(
+            lambda shift, width, j, c, h: Peak(
+                "13C", shift, shift, shift, couplings_hz=tuple(j), carbons=c, attached_h=h, multiplicity="d" if j else None
+            ),
+            numbers,
+            st.just(0),
+            st.lists(st.integers(1, 300).map(float), max_size=2),
+            st.sampled_from([None, 2, 3]),
+            st.sampled_from([None, 0, 1, 2, 3]),
+        ),
+        min_size=1,
+        max_size=8,
+    )
+)
 def test_round_trip(peaks):
     peaks = [*peaks, Peak("13C", 150.0, 150.0, 150.0)]
     again = parse_peaks(render_journal_text(PeakList("13C", tuple(peaks), "CDCl3", 101.0)), "13C")
     assert again.solvent == "CDCl3" and again.frequency_mhz == 101.0
     for one, other in zip(peaks, again.peaks, strict=True):
         assert (one.shift_ppm, one.couplings_hz, one.carbons, one.attached_h) == (
-            pytest.approx(other.shift_ppm), other.couplings_hz, other.carbons, other.attached_h)
+            pytest.approx(other.shift_ppm),
+            other.couplings_hz,
+            other.carbons,
+            other.attached_h,
+        )
 
 
 @settings(max_examples=300, deadline=None)

@@ -24,7 +24,15 @@ def test_frequency_of_the_heading_is_used():
     assert len(require_grouped(parse_peaks(f"1H NMR (400 MHz, CDCl3) δ {LINES}", "1H"), None).peaks) == 3
 
 
-@pytest.mark.parametrize("text", ["9.65, 9.14, 7.34, 6.68, 1.98", "7.26, 7.28, 4.1", "8.04, 7.54, 7.43, 4.38, 1.39", "3.3 (m, 2H), 3.28 (m, 2H), 3.26 (m), 3.24 (m)"])
+@pytest.mark.parametrize(
+    "text",
+    [
+        "9.65, 9.14, 7.34, 6.68, 1.98",
+        "7.26, 7.28, 4.1",
+        "8.04, 7.54, 7.43, 4.38, 1.39",
+        "3.3 (m, 2H), 3.28 (m, 2H), 3.26 (m), 3.24 (m)",
+    ],
+)
 def test_ordinary_lists_are_left_alone(text):
     assert not looks_line_by_line(parse_peaks(text, "1H"))
 

@@ -9,11 +9,29 @@ from shiftpred.errors import SettingError
 from shiftpred.peaks import impurity_sets, name_leftovers, normalise_solvent, reference_line, solvent_lines, water_line
 
 
-@pytest.mark.parametrize("text, name", [
-    ("CDCl3", "CDCl3"), ("CDCl₃", "CDCl3"), ("chloroform-d", "CDCl3"), ("[D6]DMSO", "DMSO-d6"), ("DMSO-d₆", "DMSO-d6"), ("d6-DMSO", "DMSO-d6"),
-    ("(CD3)2SO", "DMSO-d6"), ("MeOD", "CD3OD"), ("methanol-d4", "CD3OD"), ("CD3OD", "CD3OD"), ("(CD3)2CO", "acetone-d6"), ("benzene-d6", "C6D6"),
-    ("MeCN-d3", "CD3CN"), ("cd2cl2", "CD2Cl2"), ("THF-d8", "THF-d8"), ("D₂O", "D2O"), ("Pyridine-d5", "pyridine-d5"), ("toluene-d8", "toluene-d8"),
-])
+@pytest.mark.parametrize(
+    "text, name",
+    [
+        ("CDCl3", "CDCl3"),
+        ("CDCl₃", "CDCl3"),
+        ("chloroform-d", "CDCl3"),
+        ("[D6]DMSO", "DMSO-d6"),
+        ("DMSO-d₆", "DMSO-d6"),
+        ("d6-DMSO", "DMSO-d6"),
+        ("(CD3)2SO", "DMSO-d6"),
+        ("MeOD", "CD3OD"),
+        ("methanol-d4", "CD3OD"),
+        ("CD3OD", "CD3OD"),
+        ("(CD3)2CO", "acetone-d6"),
+        ("benzene-d6", "C6D6"),
+        ("MeCN-d3", "CD3CN"),
+        ("cd2cl2", "CD2Cl2"),
+        ("THF-d8", "THF-d8"),
+        ("D₂O", "D2O"),
+        ("Pyridine-d5", "pyridine-d5"),
+        ("toluene-d8", "toluene-d8"),
+    ],
+)
 def test_spellings(text, name):
     assert normalise_solvent(text) == name
 
@@ -25,7 +43,13 @@ def test_unknown_solvent_lists_the_names():
 
 def test_lines_against_the_published_table():
     """Gottlieb 1997, Fulmer 2010 (transcribed): solvent, residual and water lines."""
-    names = {"CDCl3 (solvent)": 77.16, "DMSO-d6 (solvent)": 39.52, "CD3OD (solvent)": 49.00, "C6D6 (solvent)": 128.06, "acetone-d6 (solvent)": 29.84}
+    names = {
+        "CDCl3 (solvent)": 77.16,
+        "DMSO-d6 (solvent)": 39.52,
+        "CD3OD (solvent)": 49.00,
+        "C6D6 (solvent)": 128.06,
+        "acetone-d6 (solvent)": 29.84,
+    }
     seen = set()
     with open(find_datasets() / "measured_shifts" / "assigned_shifts.csv", encoding="utf-8") as handle:
         for row in csv.DictReader(handle):
@@ -81,6 +105,8 @@ def test_unknown_line_stays_unnamed():
 
 
 def test_the_solvent_is_no_impurity_in_itself():
-    assert "chloroform" not in {s.name for s in impurity_sets("CDCl3")} and "chloroform" in {s.name for s in impurity_sets("DMSO-d6")}
+    assert "chloroform" not in {s.name for s in impurity_sets("CDCl3")} and "chloroform" in {
+        s.name for s in impurity_sets("DMSO-d6")
+    }
     labels = name_leftovers({"13C": [77.16], "1H": [7.26]}, "CDCl3")
     assert set(labels.values()) == {"solvent CDCl3"}
