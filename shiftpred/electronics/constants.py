@@ -12,7 +12,7 @@ class SourcedConstant:
     """A constant with its scale, unit and origin."""
 
     name: str
-    """'electronegativity', 'sigma_I', 'sigma_star', 'sigma_meta', 'sigma_para', 'F', 'R', 'partial_charge', …"""
+    """'electronegativity', 'sigma_I', 'sigma_star', 'sigma_meta', 'sigma_para', 'F', 'R', 'sigma_R', 'partial_charge', …"""
     scale: str
     """Scale or method: 'Pauling (Allred 1961)', 'Bratsch harmonic mean', 'Taft', …"""
     value: float

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from functools import lru_cache
-from math import sqrt
 
 from rdkit import Chem
 
 from shiftpred.electronics.constants import SourcedConstant
+from shiftpred.electronics.pauling_scale import compute_pauling_scale
 from shiftpred.electronics.sourced_tables import load_element_values, load_rows
 from shiftpred.errors import NotApplicable, SettingError, quote
 
@@ -16,7 +16,6 @@ __all__ = [
     "compute_allred_rochow",
     "compute_mulliken_absolute",
     "compute_mulliken_pauling_units",
-    "compute_pauling_difference",
     "compute_sanderson_ratio",
     "compute_slater_effective_charge",
     "element_scales",
@@ -37,53 +36,6 @@ _MOVED = {
     90: (("5f", "6d", 2),),
     103: (("6d", "7p", 1),),
 }
-
-
-def compute_pauling_difference(d_ab: float, d_aa: float, d_bb: float, mean: str = "arithmetic") -> float:
-    """Return |χ_A − χ_B| on Pauling's scale from three bond energies.
-
-    Parameters
-    ----------
-    d_ab, d_aa, d_bb : float
-        Dissociation energies of A-B, A-A and B-B in eV.
-    mean : {'arithmetic', 'geometric'}, default 'arithmetic'
-        'arithmetic': √(D_AB − ½(D_AA + D_BB)); 'geometric': from D_AB = √(D_AA D_BB) + 1.3 Δχ².
-
-    Returns
-    -------
-    float
-        In Pauling units.
-
-    Raises
-    ------
-    SettingError
-        If an energy is not positive, or `mean` is another word.
-    NotApplicable
-        If the A-B bond is weaker than the mean, so that Pauling's extra ionic energy is negative.
-
-    References
-    ----------
-    Pauling, J. Am. Chem. Soc. 1932, 54, 3570, doi 10.1021/ja01348a011.
-
-    Examples
-    --------
-    >>> round(compute_pauling_difference(3.79, 4.52, 2.00), 2)
-    0.73
-    """
-    for name, energy in (("d_ab", d_ab), ("d_aa", d_aa), ("d_bb", d_bb)):
-        if not energy > 0:
-            raise SettingError(f"argument '{name}'", quote(energy), "a bond energy above 0 in eV", "energies in eV, not kJ/mol")
-    if mean not in ("arithmetic", "geometric"):
-        raise SettingError("argument 'mean'", quote(mean), "'arithmetic' or 'geometric'", "mean='arithmetic'")
-    extra = d_ab - (d_aa + d_bb) / 2 if mean == "arithmetic" else (d_ab - sqrt(d_aa * d_bb)) / 1.3
-    if extra < 0:
-        raise NotApplicable(
-            "Pauling's difference",
-            f"an A-B bond weaker than the {mean} mean of A-A and B-B",
-            "an extra ionic energy of 0 or more",
-            "the geometric mean, as for alkali hydrides" if mean == "arithmetic" else "another scale for this pair",
-        )
-    return sqrt(extra)
 
 
 def compute_mulliken_absolute(ionisation_energy: float, electron_affinity: float) -> float:
@@ -137,7 +89,7 @@ def _configuration(atomic_number: int) -> dict[str, int]:
 
 
 def compute_slater_effective_charge(symbol: str, for_added_electron: bool = False) -> float:
-    """Return Z_eff for the outermost s or p electron by Slater's rules.
+    """Return Z_eff for the outermost electron by Slater's rules: s or p, in palladium 4d.
 
     Parameters
     ----------
@@ -168,6 +120,8 @@ def compute_slater_effective_charge(symbol: str, for_added_electron: bool = Fals
     z = _atomic_number(symbol)
     shells = _configuration(z)
     outer = max(int(shell[0]) for shell in shells if shell[1] in "sp")
+    if n_d := shells.get(f"{outer}d", 0):  # Palladium, whose outermost electrons are 4d: the next one would be 5s.
+        return z - 0.85 * 18 - (z - 18) if for_added_electron else z - 0.35 * (n_d - 1) - (z - n_d)
     same = sum(n for shell, n in shells.items() if int(shell[0]) == outer and shell[1] in "sp")
     inside = sum(n for shell, n in shells.items() if int(shell[0]) == outer - 1)
     deeper = z - same - inside - sum(n for s, n in shells.items() if int(s[0]) >= outer and s[1] in "df")
@@ -205,6 +159,8 @@ def compute_allred_rochow(symbol: str, radius_pm: float | None = None) -> float:
     return 3590 * compute_slater_effective_charge(symbol, for_added_electron=True) / radius_pm**2 + 0.744
 
 
+_WITHOUT_ALLRED_ROCHOW = ("H", "He", "Ne", "Ar", "Kr", "Xe", "Rn")
+"""They have no covalent radius of the kind that the formula was drawn up with (fluorine's was 72 pm, not 57)."""
 _NOBLE = (("He", 2), ("Ne", 10), ("Ar", 18), ("Kr", 36), ("Xe", 54), ("Rn", 86))
 
 
@@ -313,6 +269,11 @@ def element_scales(symbol: str) -> tuple[SourcedConstant, ...]:
     def add(scale: str, value: float, unit: str, source: str) -> None:
         found.append(SourcedConstant("electronegativity", scale, value, unit, source, "computed", "computed"))
 
+    for mean in ("arithmetic", "geometric"):
+        value = compute_pauling_scale(mean).get(symbol)
+        if value is not None:
+            inputs = f"least squares over the bonds of bond_energies.csv, {mean} mean, H = 2.20"
+            add(f"Pauling from bond energies ({mean} mean)", value, "Pauling units", inputs)
     energy = load_element_values("ionisation_energy_1", "NIST ASD").get(symbol)
     affinity = load_element_values("electron_affinity", "evaluated").get(symbol)
     if energy is not None and affinity is not None:
@@ -324,7 +285,7 @@ def element_scales(symbol: str) -> tuple[SourcedConstant, ...]:
         add("Mulliken in Pauling units (kJ/mol line)", value, "Pauling units", f"0.00197 (IE + EA) + 0.19; {inputs}")
     radii = {name: load_element_values("covalent_radius", name).get(symbol) for name in ("Pauling 1960", "Cordero 2008")}
     source, radius = next(((name, value) for name, value in radii.items() if value), ("", None))
-    if radius is not None and symbol != "H":
+    if radius is not None and symbol not in _WITHOUT_ALLRED_ROCHOW:
         charge = compute_slater_effective_charge(symbol, for_added_electron=True)
         inputs = f"Slater Z_eff {charge:.2f}, radius {radius:g} pm ({source})"
         add("Allred-Rochow", compute_allred_rochow(symbol), "Pauling units", f"3590 Z_eff/r² + 0.744; {inputs}")

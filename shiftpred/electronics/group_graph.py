@@ -15,12 +15,8 @@ from shiftpred.errors import NotApplicable, StructureError, quote
 
 __all__ = ["GroupGraph", "parse_group"]
 
-_ORDERS = {
-    Chem.BondType.SINGLE: 1.0,
-    Chem.BondType.DOUBLE: 2.0,
-    Chem.BondType.TRIPLE: 3.0,
-    Chem.BondType.AROMATIC: 1.5,
-}
+_ORDERS = frozenset((1.0, 1.5, 2.0, 3.0))
+"""Any other bond (to a metal, of no order) counts as single."""
 _NON_METALS = frozenset("H B C N O F Ne Si P S Cl Ar Ge As Se Br Kr Sb Te I Xe He".split())
 _LOOK = "one group with one '*' at its point of attachment, such as '*OC(C)=O'"
 
@@ -113,7 +109,8 @@ def parse_group(smiles: str) -> GroupGraph:
             _LOOK,
             "drawing the group again and exporting its SMILES",
         )
-    points = [atom for atom in mol.GetAtoms() if not atom.GetAtomicNum()]
+    atoms = [mol.GetAtomWithIdx(i) for i in range(mol.GetNumAtoms())]
+    points = [atom for atom in atoms if not atom.GetAtomicNum()]
     parts = len(Chem.GetMolFrags(mol))
     if len(points) != 1 or parts != 1 or not points[0].GetDegree():
         came = f"{len(points)} points of attachment" if len(points) != 1 else f"{parts} separate parts"
@@ -130,24 +127,24 @@ def parse_group(smiles: str) -> GroupGraph:
             "'*' at the end of one group",
             "each of the groups by itself",
         )
-    return _build(mol, points[0])
+    return _build(mol, atoms, points[0])
 
 
-def _build(mol: Chem.Mol, point: Chem.Atom) -> GroupGraph:
+def _build(mol: Chem.Mol, atoms: list[Chem.Atom], point: Chem.Atom) -> GroupGraph:
     start = point.GetIdx()
-    heavy = [atom for atom in mol.GetAtoms() if atom.GetAtomicNum()]
+    heavy = [atom for atom in atoms if atom.GetAtomicNum()]
     index = {atom.GetIdx(): k for k, atom in enumerate(heavy)}
     symbols = [atom.GetSymbol() for atom in heavy]
     charges = [float(atom.GetFormalCharge()) for atom in heavy]
     aromatic = [atom.GetIsAromatic() for atom in heavy]
     bonds, oxos, pi = [], [0] * len(heavy), [0.0] * len(heavy)
-    for bond in mol.GetBonds():
-        a, b, order = bond.GetBeginAtomIdx(), bond.GetEndAtomIdx(), _ORDERS.get(bond.GetBondType(), 1.0)
-        for one, other in ((a, b), (b, a)):
+    for bond in map(mol.GetBondWithIdx, range(mol.GetNumBonds())):
+        a, b, order = bond.GetBeginAtomIdx(), bond.GetEndAtomIdx(), _order(bond)
+        for one, other in ((a, b), (b, a)) if order in (2.0, 3.0) else ():
             if one in index:
                 k = index[one]
-                pi[k] += 1.0 if order == 2 else 2.0 if order == 3 else 0.0
-                oxos[k] += order == 2 and mol.GetAtomWithIdx(other).GetSymbol() == "O"
+                pi[k] += order - 1
+                oxos[k] += order == 2 and atoms[other].GetAtomicNum() == 8
         if start not in (a, b):
             bonds.append((index[a], index[b], order))
     hybrids = [_hybrid(s, n, a.GetIsAromatic(), a.GetTotalDegree()) for s, n, a in zip(symbols, pi, heavy, strict=True)]
@@ -163,12 +160,13 @@ def _build(mol: Chem.Mol, point: Chem.Atom) -> GroupGraph:
     for a, b, order in bonds:
         neighbours[a].append((b, order))
         neighbours[b].append((a, order))
-    _share_charges(symbols, charges, hybrids, neighbours)
+    if min(charges) < 0:
+        _share_charges(symbols, charges, hybrids, neighbours)
     starts = sorted(index[n.GetIdx()] for n in point.GetNeighbors())
     first = starts[0]
-    order = _ORDERS.get(mol.GetBondBetweenAtoms(start, heavy[first].GetIdx()).GetBondType(), 1.0)
+    order = _order(mol.GetBondBetweenAtoms(start, heavy[first].GetIdx()))
     return GroupGraph(
-        smiles=_canonical(mol, hydrogen=len(symbols) == 1),
+        smiles=_canonical(mol, atoms, hydrogen=len(symbols) == 1),
         attached=first,
         attached_order=order,
         starts=tuple(starts),
@@ -184,14 +182,20 @@ def _build(mol: Chem.Mol, point: Chem.Atom) -> GroupGraph:
     )
 
 
-def _canonical(mol: Chem.Mol, hydrogen: bool) -> str:
+def _order(bond: Chem.Bond) -> float:
+    order = bond.GetBondTypeAsDouble()
+    return order if order in _ORDERS else 1.0
+
+
+def _canonical(mol: Chem.Mol, atoms: list[Chem.Atom], hydrogen: bool) -> str:
     """Canonical SMILES; isotopes, stereo and atom maps change no constant here."""
-    mol = Chem.Mol(mol)
-    for atom in mol.GetAtoms():
-        atom.SetAtomMapNum(0)
-        atom.SetIsotope(0)
-    with rdBase.BlockLogs():
-        mol = mol if hydrogen else Chem.RemoveHs(mol)
+    if any(atom.GetAtomMapNum() or atom.GetIsotope() or atom.GetAtomicNum() == 1 for atom in atoms):
+        mol = Chem.Mol(mol)
+        for atom in mol.GetAtoms():
+            atom.SetAtomMapNum(0)
+            atom.SetIsotope(0)
+        with rdBase.BlockLogs():
+            mol = mol if hydrogen else Chem.RemoveHs(mol)
     return Chem.MolToSmiles(mol, isomericSmiles=False)
 
 

@@ -17,7 +17,7 @@ from shiftpred.electronics.sourced_tables import load_element_values, load_rows
 
 __all__ = [
     "compute_atom_prior",
-    "compute_distance",
+    "compute_distances",
     "compute_inverse_square_sums",
     "compute_topological",
     "find_sigma_i",
@@ -28,27 +28,40 @@ _TURN = {"sp3": pi - radians(109.5), "sp2": pi - radians(120.0), "sp": 0.0, "s":
 _HYDROGEN = 2.20
 
 
-def compute_distance(group: GroupGraph, path: tuple[int, ...]) -> float:
-    """Return the distance in Å from the site's carbon to the last atom of a path of bonds, drawn as a planar zigzag."""
+def compute_distances(group: GroupGraph) -> tuple[float, ...]:
+    """Return each atom's distance in Å from the site's carbon, its path of bonds drawn as a planar zigzag.
+
+    Parameters
+    ----------
+    group : GroupGraph
+
+    Returns
+    -------
+    tuple of float
+        (n_atoms,); nan behind an element without covalent radius.
+    """
     radii = load_element_values("covalent_radius", "Pyykko 2009 (single bond)")
-    x = y = heading = 0.0
-    side, before = 1.0, radii["C"]
-    for atom in path:
+    # Where the pen stands on each atom, where it points, which way it turns next: shared by all paths that go on from there.
+    start = (0.0, 0.0, 0.0, 1.0, radii["C"])
+    pens: dict[int, tuple[float, float, float, float, float]] = {}
+    depths, paths = group.depths, group.paths
+    for atom in sorted(range(len(depths)), key=depths.__getitem__):
+        x, y, heading, side, before = pens[paths[atom][-2]] if depths[atom] else start
         here = radii.get(group.symbols[atom], nan)
         length = (before + here) / 100
         x += length * cos(heading)
         y += length * sin(heading)
-        heading += side * _TURN[group.hybrids[atom]]
-        side, before = -side, here
-    return (x * x + y * y) ** 0.5
+        pens[atom] = x, y, heading + side * _TURN[group.hybrids[atom]], -side, here
+    return tuple((pens[atom][0] ** 2 + pens[atom][1] ** 2) ** 0.5 for atom in range(len(depths)))
 
 
+@lru_cache(maxsize=16)  # The constants of one group are asked for one after the other.
 def compute_inverse_square_sums(group: GroupGraph) -> dict[tuple[str, str], float]:
     """Return (kind of atom, element) → Σ 1/r² in Å⁻², over all atoms of the group."""
     sums: dict[tuple[str, str], float] = {}
-    for atom, path in enumerate(group.paths):
+    for atom, distance in enumerate(compute_distances(group)):
         key = compute_atom_type(group, atom), group.symbols[atom]
-        sums[key] = sums.get(key, 0.0) + 1 / compute_distance(group, path) ** 2
+        sums[key] = sums.get(key, 0.0) + 1 / distance**2
     return sums
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from functools import lru_cache
+from functools import cache, lru_cache
 from statistics import median
 
 from rdkit import Chem, rdBase
@@ -20,6 +20,7 @@ def _load(table: str) -> dict[str, tuple[dict[str, str], ...]]:
     return {smiles: tuple(rows) for smiles, rows in found.items()}
 
 
+@cache
 def _canonical(smiles: str) -> str:
     # Not by parse_group, which would build the whole graph: the first look-up of a process waits for this loop.
     with rdBase.BlockLogs():

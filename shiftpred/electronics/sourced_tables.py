@@ -3,10 +3,24 @@
 from __future__ import annotations
 
 import csv
+from collections.abc import Iterable
 from functools import cache
 from importlib.resources import files
 
-__all__ = ["load_element_values", "load_gasteiger_marsili", "load_rows"]
+from shiftpred.errors import InputError, quote
+
+__all__ = ["load_element_values", "load_gasteiger_marsili", "load_rows", "parse_rows"]
+
+_COLUMNS = {
+    "bond_energies": "element_a element_b value unit source verified note",
+    "elements": "symbol Z property scale value unit source verified note",
+    "gasteiger_marsili": "symbol hybrid oxo a_ev b_ev c_ev source verified note",
+    "group_electronegativity": "group smiles scale value unit source verified confidence note",
+    "inductive_parameters": "quantity kind value unit source verified",
+    "resonance_parameters": "term value unit source verified",
+    "substituent_constants": "substituent smiles parameter value source verified note",
+}
+_VERIFIED = ("transcription", "memory", "computed")
 
 
 @cache
@@ -22,9 +36,71 @@ def load_rows(name: str) -> tuple[dict[str, str], ...]:
     -------
     tuple of dict
         Column → text.
+
+    Raises
+    ------
+    InputError
+        See `parse_rows`.
     """
     with files("shiftpred.electronics").joinpath(f"tables/{name}.csv").open(encoding="utf-8", newline="") as file:
-        return tuple(csv.DictReader(file))
+        return parse_rows(name, file)
+
+
+def parse_rows(name: str, lines: Iterable[str]) -> tuple[dict[str, str], ...]:
+    """Read one of the tables, and refuse it if a number in it does not say where it comes from.
+
+    Parameters
+    ----------
+    name : str
+        Tells which columns there must be.
+    lines : iterable of str
+        CSV with a header line.
+
+    Returns
+    -------
+    tuple of dict
+        Column → text.
+
+    Raises
+    ------
+    InputError
+        If a column is unknown or lacking, a source is blank, or `verified` is another word than 'transcription', 'memory'
+        or 'computed'.
+    """
+    reader = csv.DictReader(lines)
+    expected = _COLUMNS[name].split()
+    if reader.fieldnames != expected:
+        raise InputError(
+            f"table {name}.csv, header",
+            f"the columns {', '.join(reader.fieldnames or ())}",
+            f"the columns {', '.join(expected)}",
+            "putting back the table of this edition",
+        )
+    rows = []
+    for number, row in enumerate(reader, start=2):
+        if None in row or None in row.values():
+            raise InputError(
+                f"table {name}.csv, line {number}",
+                "a row with other cells than the header",
+                f"{len(expected)} cells",
+                "quotation marks around cells with commas",
+            )
+        if not row["source"].strip():
+            raise InputError(
+                f"table {name}.csv, line {number}",
+                "a blank source",
+                "the publication, or that there is none at hand",
+                "filling in the column 'source'",
+            )
+        if row["verified"] not in _VERIFIED:
+            raise InputError(
+                f"table {name}.csv, line {number}",
+                f"verified = {quote(row['verified'])}",
+                "one of " + ", ".join(map(repr, _VERIFIED)),
+                "'memory', if it was not seen",
+            )
+        rows.append(row)
+    return tuple(rows)
 
 
 @cache

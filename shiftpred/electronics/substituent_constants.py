@@ -65,6 +65,9 @@ class SubstituentConstants:
         """Return the first value of a name (and scale, if given); published wins, computed stands in; None if neither."""
         return next((v for v in self.values if v.name == name and scale in (None, v.scale)), None)
 
+    def __str__(self) -> str:
+        return render_substituent_text(self).rstrip("\n")
+
     def to_dict(self) -> dict[str, object]:
         """Return plain dictionaries, lists, texts and numbers."""
         return {
@@ -119,6 +122,8 @@ def substituent(smiles: str) -> SubstituentConstants:
     values, undefined = [], []
     for item in (*_compute_electronegativities(group), *_find_constants(group, rows, obstacle)):
         (undefined if isinstance(item, UndefinedConstant) else values).append(item)
+    resonance = _compute_sigma_r(values, obstacle)
+    (undefined if isinstance(resonance, UndefinedConstant) else values).append(resonance)
     names = list(dict.fromkeys(value.name for value in values))
     values.sort(key=lambda value: names.index(value.name))  # stable: keeps the order within a name
     return SubstituentConstants(group.smiles, tuple(values), tuple(undefined))
@@ -253,6 +258,32 @@ def _find_constants(
                 continue
             reason = f"the fit has no parameter for {', '.join(sorted(set(group.symbols) - {'C', 'H'})) or 'this atom'} here"
         yield UndefinedConstant(name, scale, reason)
+
+
+def _compute_sigma_r(values: list[SourcedConstant], obstacle: str) -> SourcedConstant | UndefinedConstant:
+    """Taft's σ_R = σ_para − σ_I where both are published; else R stands in, which it follows with slope 1."""
+    if obstacle:
+        return UndefinedConstant("sigma_R", "resonance, Taft type", f"{obstacle}; only published values are given")
+    published = {}
+    for value in values:
+        if value.origin == "published":
+            published.setdefault(value.name, value)
+    if "sigma_para" in published and "sigma_I" in published:
+        para, inductive = published["sigma_para"], published["sigma_I"]
+        source = f"σ_para − σ_I of the values above, {para.value:g} − {inductive.value:g} ({_shorten(inductive.source)})"
+        number = para.value - inductive.value
+        return SourcedConstant("sigma_R", "resonance, Taft type", number, "dimensionless", source, "computed", "computed")
+    stand_in = published.get("R") or next((value for value in values if value.name == "R"), None)
+    if stand_in is None:
+        return UndefinedConstant("sigma_R", "resonance, Taft type", "it needs σ_para and σ_I, or R, and there is neither")
+    source = f"R as above ({stand_in.origin}); where both are published, σ_para − σ_I = 1.00 R − 0.01 (r = 0.98)"
+    return SourcedConstant(
+        "sigma_R", "resonance, R as stand-in", stand_in.value, "dimensionless", source, "computed", "computed"
+    )
+
+
+def _shorten(source: str) -> str:
+    return source.split(";")[0].split(",")[0]
 
 
 _SEEN = {"transcription": "published, seen quoted", "memory": "published, remembered", "computed": "computed"}
