@@ -160,9 +160,9 @@ def test_a_site_of_a_usual_molecule_takes_less_than_two_milliseconds():
     mol = Chem.MolFromSmiles(NAMED["quinine"])
     best = float("inf")
     for _ in range(5):
-        start = time.perf_counter()
+        start = time.process_time()
         split_molecule(mol)
-        best = min(best, time.perf_counter() - start)
+        best = min(best, time.process_time() - start)
     assert best / mol.GetNumAtoms() < 2e-3
 
 
