@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
+from rdkit import Chem
 
 from shiftpred.assignment.parameters import PARAMETERS
-from shiftpred.peaks.impurities import impurity_sets
+from shiftpred.peaks.impurities import ImpurityLine, impurity_sets
 from shiftpred.peaks.solvents import solvent_lines, water_line
 
 __all__ = ["Guest", "GuestSet", "build_expected_guests", "build_impurity_guests", "build_solvent_guests"]
@@ -20,8 +22,9 @@ _MULTIPLET_SCALE_PPM = 0.35
 _PRESENT, _PRESENT_ONE_LINE = 0.03, 0.008
 """Chance that a given common impurity is in the tube; lower where one line is all it gives, so that a lone line is not
 explained away lightly (common practice, no source)."""
-_REACH = {"13C": 0.6, "1H": 0.08}
-"""How near an observed line must be for an impurity to be tried, ppm: tolerance and reference offset."""
+_PRESENT_REFERENCE = 0.2
+_REACH = {"13C": 0.3, "1H": 0.05}
+"""How much farther than its tolerance an observed line may lie for an impurity to be tried, ppm: the reference offset."""
 
 
 @dataclass(frozen=True)
@@ -51,6 +54,8 @@ class GuestSet:
     """Log chance that the compound is in the tube; 0 for what is always there."""
     coherent: bool = True
     """True: only if every line is found."""
+    smiles: str = ""
+    """Canonical SMILES without stereo; the compound itself is never its own impurity."""
 
 
 def build_expected_guests(prediction, nucleus: str, name: str) -> GuestSet:
@@ -123,25 +128,40 @@ def build_impurity_guests(solvent: str | None, observed: dict[str, np.ndarray]) 
     """
     found: dict[str, list[GuestSet]] = {nucleus: [] for nucleus in observed}
     for entry in impurity_sets(solvent):
-        lines = {n: v for n, v in entry.lines.items() if n in observed}
-        if not lines or not all(_is_near(x, observed[n], n) or _may_be_absent(x, n) for n, v in lines.items() for x in v):
+        lines: dict[str, list[ImpurityLine]] = {}
+        for line in entry.all_lines:
+            if line.nucleus in observed and line.nucleus not in entry.incomplete and not line.labile:
+                lines.setdefault(line.nucleus, []).append(line)
+        if not lines or not all(_is_near(x, observed[n]) or _may_be_absent(x) for n, v in lines.items() for x in v):
             continue
-        complete = sum(len(v) for v in lines.values()) > 1
+        complete = sum(len(v) for v in lines.values()) > 1 or entry.kind == "reference"
         label = entry.name if complete else f"possibly {entry.name}"
-        prior = _PRESENT if complete else _PRESENT_ONE_LINE
-        for nucleus, shifts in lines.items():
-            scale = PARAMETERS[nucleus].impurity_scale_ppm * (2.0 if entry.borrowed else 1.0)
-            guests = tuple(Guest(label, x, scale, 4.0, 0.05) for x in shifts if _is_near(x, observed[nucleus], nucleus))
+        prior = _PRESENT_REFERENCE if entry.kind == "reference" else _PRESENT if complete else _PRESENT_ONE_LINE
+        for nucleus, listed in lines.items():
+            floor = PARAMETERS[nucleus].impurity_scale_ppm
+            guests = tuple(
+                Guest(label, x.shift_ppm, max(floor, x.tolerance_ppm / 2), 4.0, 0.05, anchor=entry.kind == "reference")
+                for x in listed
+                if _is_near(x, observed[nucleus])
+            )
             if guests:
-                found[nucleus].append(GuestSet(label, guests, float(np.log(prior)) / len(lines)))
+                found[nucleus].append(
+                    GuestSet(label, guests, float(np.log(prior)) / len(lines), smiles=_canonical(entry.smiles))
+                )
     return {n: tuple(sorted(sets, key=lambda s: (-len(s.guests), s.name))) for n, sets in found.items()}
 
 
-def _is_near(shift: float, observed: np.ndarray, nucleus: str) -> bool:
-    reach = _REACH[nucleus]
-    return bool(len(observed)) and bool(np.abs(observed - shift).min() <= reach)
+@lru_cache(maxsize=512)
+def _canonical(smiles: str) -> str:
+    mol = Chem.MolFromSmiles(smiles)
+    return Chem.MolToSmiles(mol, isomericSmiles=False) if mol is not None else smiles
 
 
-def _may_be_absent(shift: float, nucleus: str) -> bool:
+def _is_near(line: ImpurityLine, observed: np.ndarray) -> bool:
+    reach = _REACH[line.nucleus] + line.tolerance_ppm
+    return bool(len(observed)) and bool(np.abs(observed - line.shift_ppm).min() <= reach)
+
+
+def _may_be_absent(line: ImpurityLine) -> bool:
     """A carboxylic acid's hydrogen is often not seen."""
-    return nucleus == "1H" and shift > 9.5
+    return line.nucleus == "1H" and line.shift_ppm > 9.5

@@ -6,6 +6,7 @@ import math
 from dataclasses import dataclass, field
 
 import numpy as np
+from rdkit import Chem
 
 from shiftpred.assignment.guests import Guest, GuestSet
 from shiftpred.assignment.lines import Lines, Offer, build_offers
@@ -109,7 +110,7 @@ def assign_nucleus(
         problem = _build_problem(units, lines, offers, guests, offset, others, pair_share, peaks)
         chosen, total = _solve(problem, parameters.resolution_ppm)
         offset, anchored = _update_offset(units, guests, problem, chosen, offset, parameters)
-    candidates = list(peaks.impurities)
+    candidates = _leave_out_itself(units.mol, peaks.impurities)
     problem = _build_problem(units, lines, offers, guests, offset, others, pair_share, peaks)
     chosen, total = _solve(problem, parameters.resolution_ppm)
     while candidates and len(accepted) < _MOST_IMPURITIES:
@@ -130,6 +131,13 @@ def assign_nucleus(
         candidates.remove(candidate)
     problem, chosen = _keep_chosen_offers(problem, chosen, len(lines))
     return _finish(units, lines, guests, problem, chosen, offset, anchored, accepted, peaks, parameters)
+
+
+def _leave_out_itself(mol, impurities) -> list[GuestSet]:
+    if not impurities:
+        return []
+    own = set(Chem.MolToSmiles(mol, isomericSmiles=False).split("."))
+    return [s for s in impurities if s.smiles not in own]
 
 
 def _gather(always, accepted) -> tuple[Guest, ...]:
