@@ -139,7 +139,7 @@ def evaluate_model(
         overall=_summarise_overall(sites),
         without_hydrogen_counts={k: compute_error_figures(r.error) for k, r in bare.groupby("kind")},
         certain=_summarise(sites[sites.certain]),
-        by_class=_summarise_classes(sites),
+        by_class=_summarise_classes(sites, bare),
         by_element=_summarise_elements(sites),
         by_novelty={k: _summarise(r) for k, r in sites.groupby(_name_novelty(sites))},
         new_scaffolds=_summarise_new_scaffolds(sites, chosen, training),
@@ -220,13 +220,19 @@ def _summarise_overall(sites: pd.DataFrame) -> dict:
     return out
 
 
-def _summarise_classes(sites: pd.DataFrame) -> list[dict]:
-    """Return one row for each environment class, the most sites first within a nucleus."""
+def _summarise_classes(sites: pd.DataFrame, bare: pd.DataFrame) -> list[dict]:
+    """Return one row for each environment class, the most sites first within a nucleus.
+
+    `bare` holds the sites as they are assigned without hydrogen counts.
+    """
     rows = []
+    bare_means = bare.error.abs().groupby([bare.nucleus, bare.environment]).mean()
     for (nucleus, environment), members in sites.groupby(["nucleus", "environment"]):
         error, half, molecule = (members[c].to_numpy() for c in ("error", "half", "molecule"))
         row = dict(nucleus=nucleus, environment=environment, molecules=int(members.molecule.nunique()))
         row |= compute_error_figures(error) | compute_coverage_figures(error, half, molecule, _NOMINAL)
+        without = bare_means.get((nucleus, environment))
+        row["mean_without_hydrogen_counts"] = None if without is None else round(float(without), 4)
         row["p_short"] = compute_shortfall(np.abs(error) <= half, molecule, _SHORT) if len(members) >= _LARGE_CLASS else None
         for name in _BASELINES:
             if name in members:

@@ -10,6 +10,7 @@ _BASELINE_TITLES = {
     "substituents": "substituent model alone",
     "plain": "plain message passing",
 }
+_SHORT_KINDS = {"13C": "13C", "1H on carbon": "1H(C)", "1H on others": "1H(X)"}
 _FEWEST_SITES = 10
 
 
@@ -203,8 +204,8 @@ def _render_elements(result: dict) -> str:
         rows.append(tuple(cells))
     head = ["molecules or sites"]
     for kind in kinds:
-        head += [kind, "mean", "median", "covered"]
-    return "BY ELEMENT AND BY NOVELTY\n" + _table(tuple(head), rows)
+        head += [_SHORT_KINDS[kind], "mean", "median", "cov."]
+    return "BY ELEMENT AND BY NOVELTY (sites, errors, coverage; 1H on carbon, on other atoms)\n" + _table(tuple(head), rows)
 
 
 def _render_coverage(result: dict) -> str:
