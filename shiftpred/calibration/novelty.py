@@ -9,11 +9,13 @@ from shiftpred.features.molecule_arrays import ATOM_FEATURES, BOND_FEATURES, Mol
 __all__ = ["FAMILIAR", "NEW_NEIGHBOURS", "NEW_SURROUNDINGS", "NoveltyTable", "compute_surroundings_codes"]
 
 FAMILIAR, NEW_SURROUNDINGS, NEW_NEIGHBOURS = 0, 1, 2
-"""Levels of novelty: the atom with all atoms up to two bonds away occurs in training; only with its direct neighbours; not
-even those."""
+"""Levels of novelty: the atom with all atoms up to two bonds away, their hydrogens and rings occurs in training; only the atom
+with the elements and hybrids of its direct neighbours does; not even that."""
 
 _DISCRETE = [i for i, n in enumerate(ATOM_FEATURES) if n.split("_")[0] in ("element", "hydrogens", "neighbours", "positive",
              "negative", "aromatic", "sp", "sp2", "sp3", "ring")]
+_COARSE = [i for i, n in enumerate(ATOM_FEATURES) if n.split("_")[0] in ("element", "positive", "negative", "aromatic", "sp", "sp2", "sp3")]
+_OWN = _COARSE + [i for i, n in enumerate(ATOM_FEATURES) if n.split("_")[0] == "hydrogens"]
 _PAULING, _RADIUS = ATOM_FEATURES.index("pauling"), ATOM_FEATURES.index("covalent_radius")
 _ORDERS = [BOND_FEATURES.index(n) for n in ("single", "double", "triple", "aromatic", "other_order")]
 _random = np.random.default_rng(20240229)
@@ -36,20 +38,27 @@ def compute_surroundings_codes(graph: MoleculeArrays) -> np.ndarray:
         Equal codes mean equal surroundings out to one bond (column 0) and to two bonds (column 1), up to chance collisions
         (one in 4·10⁹ for each pair).
     """
-    exact = np.rint(graph.atoms[:, [_PAULING, _RADIUS]] * 100).astype(np.int64).view(np.uint64)
-    values = np.concatenate([graph.atoms[:, _DISCRETE].astype(np.int64).view(np.uint64), exact], axis=1)
-    code = _scramble((values * _ATOM_KEYS).sum(axis=1, dtype=np.uint64))
     bonded = graph.edges[:, _ORDERS].any(axis=1)
     source, target = graph.source[bonded], graph.target[bonded]
     order = _ORDER_KEYS[graph.edges[bonded][:, _ORDERS].argmax(axis=1)]
-    out = np.empty((len(code), 2), dtype=np.uint32)
-    for shell in range(2):
-        message = _scramble(code[source] * order + _MIX)
-        heard = np.zeros(len(code), dtype=np.uint64)
-        np.add.at(heard, target, message)
-        code = _scramble(code * np.uint64(3) + heard)
-        out[:, shell] = (code >> np.uint64(32)).astype(np.uint32)
-    return out
+
+    def listen(own, said):
+        heard = np.zeros(len(own), dtype=np.uint64)
+        np.add.at(heard, target, _scramble(said[source] * order + _MIX))
+        return _scramble(own * np.uint64(3) + heard)
+
+    one = listen(_compute_codes(graph, _OWN), _compute_codes(graph, _COARSE))
+    full = _compute_codes(graph, _DISCRETE)
+    shell = listen(full, full)
+    two = listen(shell, shell)
+    return (np.stack([one, two], axis=1) >> np.uint64(32)).astype(np.uint32)
+
+
+def _compute_codes(graph: MoleculeArrays, columns: list[int]) -> np.ndarray:
+    """Return (n_atoms,) codes of the atoms themselves by some of their columns and by what tells rarer elements apart."""
+    exact = np.rint(graph.atoms[:, [_PAULING, _RADIUS]] * 100).astype(np.int64).view(np.uint64)
+    values = np.concatenate([graph.atoms[:, columns].astype(np.int64).view(np.uint64), exact], axis=1)
+    return _scramble((values * np.concatenate([_ATOM_KEYS[: len(columns)], _ATOM_KEYS[-2:]])).sum(axis=1, dtype=np.uint64))
 
 
 def _scramble(x: np.ndarray) -> np.ndarray:

@@ -83,7 +83,7 @@ def load_open_tables(folder: str | Path, exclude: frozenset[str] = frozenset(), 
         if column not in peaks:
             peaks[column] = default
     peaks = peaks[peaks.nucleus.isin(_RANGE)].copy()
-    peaks["solvent"] = peaks.solvent.fillna("").astype(str)
+    peaks["solvent"] = peaks.solvent.astype(object).where(peaks.solvent.notna(), "").astype(str)
     keep = np.zeros(len(peaks), dtype=bool)
     for nucleus, (low, high) in _RANGE.items():
         keep |= ((peaks.nucleus == nucleus) & (peaks.shift_ppm > low) & (peaks.shift_ppm < high)).to_numpy()
@@ -125,37 +125,39 @@ def _read(folder: Path, name: str, columns: tuple[str, ...]) -> pd.DataFrame:
 
 def _build_compound(key, smiles, mol, group) -> Compound:
     labels, place = np.unique(group.site.to_numpy(), return_inverse=True)
-    shift, nucleus = group.shift_ppm.to_numpy(float), group.nucleus.to_numpy()
+    shift, is_c = group.shift_ppm.to_numpy(float), group.nucleus.to_numpy() == "13C"
     solvent, spectrum = group.solvent.to_numpy(), group.spectrum.to_numpy()
     count = pd.to_numeric(group.attached_h, errors="coerce").to_numpy(float)
-    is_c = nucleus == "13C"
     n = len(labels)
-    c13, h1, attached = np.full(n, np.nan), np.full(n, np.nan), np.full(n, -1)
-    for k in range(n):
-        here = place == k
-        c, h = shift[here & is_c], shift[here & ~is_c]
-        if len(c):
-            c13[k] = np.median(c)
-        if len(h):
-            h1[k] = h.mean()
-        stated = count[here & is_c]
-        stated = stated[~np.isnan(stated)]
-        if len(stated):
-            attached[k] = int(stated[-1])
+    attached = np.full(n, -1)
+    stated = np.flatnonzero(is_c & ~np.isnan(count))
+    attached[place[stated]] = count[stated]
+    c13, h1 = _gather(place[is_c], shift[is_c], n, np.median), _gather(place[~is_c], shift[~is_c], n, np.mean)
+    names = np.unique(solvent.astype(str))
     samples = []
-    for name in np.unique(solvent.astype(str)):
+    for name in names:
         inside = solvent == name
         values = np.full((n, 3), np.nan)
-        for k in np.unique(place[inside]):
-            here = inside & (place == k)
-            c, h = here & is_c, here & ~is_c
-            if c.any():
-                values[k, 0] = np.median(shift[c])
-            if h.any():
-                values[k, 1] = shift[h].mean()
-                gaps = [np.ptp(shift[h & (spectrum == s)]) / 2 for s in np.unique(spectrum[h])
-                        if (h & (spectrum == s)).sum() == 2]
-                if gaps:
-                    values[k, 2] = np.mean(gaps)
+        if len(names) == 1:
+            values[:, 0], values[:, 1] = c13, h1
+        else:
+            values[:, 0] = _gather(place[inside & is_c], shift[inside & is_c], n, np.median)
+            values[:, 1] = _gather(place[inside & ~is_c], shift[inside & ~is_c], n, np.mean)
+        hydrogens = inside & ~is_c
+        for k in np.flatnonzero(np.bincount(place[hydrogens], minlength=n) > 1):
+            h = hydrogens & (place == k)
+            gaps = [np.ptp(shift[h & (spectrum == s)]) / 2 for s in np.unique(spectrum[h])
+                    if (h & (spectrum == s)).sum() == 2]
+            if gaps:
+                values[k, 2] = np.mean(gaps)
         samples.append((SOLVENTS.index(name) if name in SOLVENTS else SOLVENTS.index("other"), values))
     return Compound(int(key), smiles, mol, c13, h1, attached, labels, samples)
+
+
+def _gather(place, shift, n, combine):
+    """Combine the shifts of each label; nan: none."""
+    out = np.full(n, np.nan)
+    out[place] = shift
+    for k in np.flatnonzero(np.bincount(place, minlength=n) > 1):
+        out[k] = combine(shift[place == k])
+    return out

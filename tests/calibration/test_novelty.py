@@ -34,6 +34,7 @@ def test_levels():
     seen = codes("CCCO")
     table = NoveltyTable(np.unique(seen[:, 0]), np.unique(seen[:, 1]))
     assert set(table.compute_levels(codes("OCCC"))) == {FAMILIAR}
+    assert set(table.compute_levels(codes("CCO"))) <= {FAMILIAR, NEW_SURROUNDINGS}
     other = table.compute_levels(codes("CCC(C)O"))
     assert other[0] == NEW_SURROUNDINGS
     assert set(table.compute_levels(codes("C[Se]C"))) == {NEW_NEIGHBOURS}
