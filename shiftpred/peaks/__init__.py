@@ -1,6 +1,6 @@
 """Read peak lists; solvent and impurity lines."""
 
-from shiftpred.peaks.impurities import impurity_sets, name_leftovers
+from shiftpred.peaks.impurities import find_known_set, impurity_sets, name_leftovers
 from shiftpred.peaks.multiplets import group_multiplets, looks_line_by_line, pair_doublets, require_grouped
 from shiftpred.peaks.reading import PeakListError, parse_peaks
 from shiftpred.peaks.rendering import render_journal_text
@@ -14,6 +14,7 @@ from shiftpred.peaks.solvents import (
 
 __all__ = [
     "PeakListError",
+    "find_known_set",
     "group_multiplets",
     "impurity_sets",
     "is_deuterated_exchange",

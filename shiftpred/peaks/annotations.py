@@ -26,7 +26,8 @@ _WORDS = {
 _LAST = "quint|quin|sext|sept|hept|oct|non|pent|p|[sdtqm]"
 _SHORT = re.compile(rf"(?:[dtq]{{0,4}}|[dtq]?quint|[dtq]?sept)(?:{_LAST})")
 _QUALIFIERS = {
-    "br": "br", "broad": "br", "b": "br", "app": "app", "apparent": "app", "apt": "app", "pseudo": "app", "ps": "app", "virt": "app",
+    "br": "br", "broad": "br", "b": "br", "app": "app", "apparent": "app", "apt": "app", "pseudo": "app", "ps": "app",
+    "virt": "app",
     "overlapping": "", "overlapped": "", "unresolved": "", "partially": "", "resolved": "", "complex": "", "like": "app",
     "sharp": "", "distorted": "", "poorly": "", "fine": "", "narrow": "", "very": "v", "v": "v",
 }  # fmt: skip
@@ -51,7 +52,8 @@ _LONE_HZ = re.compile(rf"({_NUMBER}(?:\s?(?:,|and|/|&)\s?{_NUMBER})*)\s?Hz")
 _BARE_J = re.compile(r"\d{1,3}\.\d{1,2}|[1-9]\d\d")
 
 _HYDROGENS = re.compile(
-    r"(?:each|ca\.?|~|≈|about)?\s?(?:(\d{1,2})\s?x\s?)?(\d{1,3}(?:\.\d{1,2})?)\s?H(?:'?s)?(?:\s(each|total|in total))?(?:[\s:].*)?",
+    r"(?:each|ca\.?|~|≈|about)?\s?(?:(\d{1,2})\s?x\s?)?(\d{1,3}(?:\.\d{1,2})?)\s?H(?:'?s)?"
+    r"(?:\s(each|total|in total))?(?:[\s:].*)?",
 )
 _CARBONS = re.compile(r"(\d{1,2})\s?x?\s?C(?:'?s)?|C\s?x\s?(\d{1,2})|x\s?(\d{1,2})|(\d{1,2})\s?x", re.IGNORECASE)
 _TIMES_LABEL = re.compile(r"(\d{1,2})\s?x\s?(\S.*)|(\d{1,2})\s?((?:Ar|[ONS])?CH[23]?)|(\S.*?)\s?x\s?(\d{1,2})")

@@ -16,8 +16,9 @@ from shiftpred.records import Peak, PeakList
 __all__ = ["COLUMNS", "is_column_table", "parse_column_table", "parse_row"]
 
 COLUMNS = {
-    "shift_ppm": ("shift_ppm", "shift", "shifts", "ppm", "delta", "δ", "delta_ppm", "δ_ppm", "chemical_shift", "chemical_shift_ppm", "peak", "peak_ppm",
-                  "position", "position_ppm", "f1_ppm", "f1"),
+    "shift_ppm": ("shift_ppm", "shift", "shifts", "ppm", "delta", "δ", "delta_ppm", "δ_ppm", "chemical_shift",
+                  "chemical_shift_ppm",
+                  "peak", "peak_ppm", "position", "position_ppm", "f1_ppm", "f1"),
     "attached_h": ("attached_h", "hydrogens_attached", "attached_hydrogens"),
     "integral": ("integral", "hydrogens", "nh", "n_h", "integration"),
     "multiplicity": ("multiplicity", "mult", "multiplet", "splitting"),

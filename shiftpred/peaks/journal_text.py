@@ -34,8 +34,9 @@ _LABEL_BEFORE = re.compile(
     r"(?!\d?J)(?:[CH]-?\d{1,3}[a-z]?'{0,2}(?:[,/]\d{1,3}[a-z]?'{0,2})*|[A-Za-z][\w()'-]{0,15})\s?[:=]\s?(?=[-+]?\.?\d)"
 )
 _BARE = re.compile(
-    r"[\s,]{0,3}(?:(?:(?:br|app|apt|broad)\.?\s?)?(?:singlet|doublet|triplet|quartet|quintet|sextet|septet|multiplet|[dtq]{0,3}(?:quint|sept|sext)|"
-    r"[sdtqm]{1,4}|bs|brs)(?![\w=]|\s?=)|\d{1,2}(?:\.\d)?\s?H(?![\w-])|J\s?(?:\([^()]{0,12}\)|[A-Z0-9,-]{0,6})?\s?=?\s?\d[\d., ]*?\s?Hz)"
+    r"[\s,]{0,3}(?:(?:(?:br|app|apt|broad)\.?\s?)?(?:singlet|doublet|triplet|quartet|quintet|sextet|septet|multiplet|"
+    r"[dtq]{0,3}(?:quint|sept|sext)|[sdtqm]{1,4}|bs|brs)(?![\w=]|\s?=)|\d{1,2}(?:\.\d)?\s?H(?![\w-])|"
+    r"J\s?(?:\([^()]{0,12}\)|[A-Z0-9,-]{0,6})?\s?=?\s?\d[\d., ]*?\s?Hz)"
 )
 _BARE_CARBON = re.compile(
     r"[\s,]{0,3}(?:\d{1,2}\s?x\s?)?(?:\d{1,2}\s?C(?![\w-])|(?:[ONS]|Ar)?CH[23]?(?![\w-])|Cq(?!\w)|C=O|CO(?!\w)|C(?![\w(\-=≡]))"
@@ -159,6 +160,8 @@ class _Scanner:
         self.problems: list[tuple[str, str, str]] = []
         self.notes: list[str] = []
         self.closing = _match_brackets(self.text)
+        self.label_at: int | None = None
+        """Where a label before the next peak begins ('C-1: 166.6')."""
 
     def run(self) -> None:
         while self.at < self.end:
@@ -181,6 +184,7 @@ class _Scanner:
         for pattern in (_JOINING, _IDLE, _LABEL_BEFORE):
             found = pattern.match(text, at, self.end)
             if found:
+                self.label_at = at if pattern is _LABEL_BEFORE else self.label_at
                 self.at = found.end()
                 return True
         return False
@@ -284,7 +288,9 @@ class _Scanner:
         return peak, found, found.problem
 
     def _store(self, peak: Peak, found: Annotation, begin: int) -> None:
-        _, written = read_place(self.clean, self.given, begin, self.at)
+        start = begin if self.label_at is None else self.label_at
+        self.label_at = None
+        _, written = read_place(self.clean, self.given, start, self.at)
         bare = found == Annotation()
         peak = replace(
             peak,

@@ -42,9 +42,9 @@ def parse_peaks(source, nucleus: str, *, where: str | None = None) -> PeakList:
     Parameters
     ----------
     source : str, path, PeakList or iterable
-        The path of a file or the text itself: journal text (a whole experimental paragraph will do), plain numbers, a table with
-        named columns, `shift/hydrogens` or `13C/1H` pairs. Or an iterable of numbers, texts, `Peak` records, mappings with the
-        table's column names, or (shift, attached hydrogens) pairs.
+        The path of a file or the text itself: journal text (a whole experimental paragraph will do), plain numbers, a table
+        with named columns, `shift/hydrogens` or `13C/1H` pairs. Or an iterable of numbers, texts, `Peak` records, mappings with
+        the table's column names, or (shift, attached hydrogens) pairs.
     nucleus : {'13C', '1H'}
     where : str, optional
         Name of the argument, for messages; default '--c13' or '--h1'.
