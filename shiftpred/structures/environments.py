@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from rdkit import Chem
 
+from shiftpred.structures.atom_table import AtomTable, build_atom_table
+
 __all__ = ["coarser_environment", "compute_environments", "compute_site_environments"]
 
-_SP, _SP2, _SP3 = Chem.HybridizationType.SP, Chem.HybridizationType.SP2, Chem.HybridizationType.SP3
-_DOUBLE, _TRIPLE = Chem.BondType.DOUBLE, Chem.BondType.TRIPLE
+_HYBRIDS = {Chem.HybridizationType.SP3: 4, Chem.HybridizationType.SP2: 3, Chem.HybridizationType.SP: 2}
+_DOUBLE, _TRIPLE = 2.0, 3.0
 _HALOGENS = frozenset((9, 17, 35, 53))
 _ORGANIC = frozenset((1, 5, 6, 7, 8, 9, 14, 15, 16, 17, 34, 35, 53))
-_LABILE = {7: "N-H", 8: "O-H", 16: "S-H"}
+_LABILE = frozenset((7, 8, 16))
 
 
 def coarser_environment(name: str) -> str:
@@ -42,48 +44,72 @@ def compute_environments(mol: Chem.Mol, nucleus: str) -> list[str | None]:
     list of str or None
         (n_atoms,); None where the atom has no such nucleus (not a carbon; no hydrogen).
     """
-    found = compute_site_environments(mol)
+    table = build_atom_table(mol)
+    found = compute_site_environments(mol, table)
     if nucleus == "13C":
-        return [e if a.GetAtomicNum() == 6 else None for e, a in zip(found, mol.GetAtoms())]
-    return [e if a.GetTotalNumHs() else None for e, a in zip(found, mol.GetAtoms())]
+        return [name if z == 6 else None for name, z in zip(found, table.elements)]
+    return [name if hydrogens else None for name, hydrogens in zip(found, table.hydrogens)]
 
 
-def compute_site_environments(mol: Chem.Mol) -> list[str]:
-    """Return the class of each atom's site, (n_atoms,), '' for a site with neither carbon nor hydrogen.
+def compute_site_environments(mol: Chem.Mol, table: AtomTable | None = None) -> list[str]:
+    """Return the class of each atom's site, '' for a site with neither carbon nor hydrogen.
 
     A carbon and its hydrogens share one class.
+
+    Parameters
+    ----------
+    mol : rdkit Mol
+        Standardised.
+    table : AtomTable, optional
+        Of the same molecule, where it is at hand.
+
+    Returns
+    -------
+    list of str
+        (n_atoms,)
     """
-    # By index: iterating over GetAtoms() costs several times as much.
-    atoms = [mol.GetAtomWithIdx(i) for i in range(mol.GetNumAtoms())]
-    elements = [a.GetAtomicNum() for a in atoms]
-    heteroaromatic = set()
-    for ring in mol.GetRingInfo().AtomRings():
-        if any(elements[i] != 6 for i in ring) and all(atoms[i].GetIsAromatic() for i in ring):
-            heteroaromatic.update(ring)
-    out = []
-    for i, (atom, z) in enumerate(zip(atoms, elements)):
+    table = table or build_atom_table(mol)
+    elements, hydrogens = table.elements, table.hydrogens
+    heteroaromatic = _find_heteroaromatic(table)
+    classes = []
+    for i, z in enumerate(elements):
         if z == 6:
-            out.append(_classify_carbon(atom, i in heteroaromatic))
+            classes.append(_classify_carbon(table, i, i in heteroaromatic))
         else:
-            out.append(_classify_hydride(atom, z) if atom.GetTotalNumHs() else "")
-    return out
+            classes.append(_classify_hydride(table, i) if hydrogens[i] else "")
+    return classes
 
 
-def _classify_carbon(atom, heteroaromatic: bool) -> str:
-    hydrogens = atom.GetTotalNumHs()
-    neighbours = [(b.GetBondType(), b.GetOtherAtom(atom).GetAtomicNum()) for b in atom.GetBonds()]
-    elements = {z for _, z in neighbours}
+def _find_heteroaromatic(table: AtomTable) -> set[int]:
+    """Return the atoms of all aromatic rings that contain another element than carbon."""
+    found: set[int] = set()
+    if any(aromatic and z != 6 for aromatic, z in zip(table.aromatic, table.elements)):
+        for ring in table.mol.GetRingInfo().AtomRings():
+            if any(table.elements[i] != 6 for i in ring) and all(table.aromatic[i] for i in ring):
+                found.update(ring)
+    return found
+
+
+def _classify_carbon(table: AtomTable, i: int, heteroaromatic: bool) -> str:
+    hydrogens = table.hydrogens[i]
+    neighbours = [table.elements[j] for j in table.neighbours[i]]
+    elements = set(neighbours)
     if not elements <= _ORGANIC:
         return f"unusual {_count(hydrogens)}, on metal"
-    if atom.GetIsAromatic():
+    if table.aromatic[i]:
         return _classify_aromatic(hydrogens, elements, heteroaromatic)
-    hybrid = atom.GetHybridization()
-    if hybrid == _SP:
-        return _classify_sp(neighbours)
-    if hybrid == _SP2:
-        return _classify_sp2(hydrogens, neighbours)
-    if hybrid == _SP3:
-        return f"sp3 {_count(hydrogens)}, {_name_partners([z for _, z in neighbours])}"
+    atom = table.atoms[i]
+    bonded = list(zip(table.orders[i], neighbours))
+    if atom.GetFormalCharge() or atom.GetNumRadicalElectrons():
+        hybrid = _HYBRIDS.get(atom.GetHybridization(), 0)
+    else:
+        hybrid = table.degrees[i]  # of a neutral carbon the number of neighbours says it, and costs less to ask
+    if hybrid == 4:
+        return f"sp3 {_count(hydrogens)}, {_name_partners(neighbours)}"
+    if hybrid == 3:
+        return _classify_sp2(hydrogens, bonded)
+    if hybrid == 2:
+        return _classify_sp(bonded)
     return f"unusual {_count(hydrogens)}"
 
 
@@ -129,38 +155,44 @@ def _classify_sp2(hydrogens, neighbours):
     return f"alkene {_count(hydrogens)}, {'on heteroatom' if single - {6} else 'on C only'}"
 
 
-def _name_partners(elements):
+def _name_partners(elements: list[int]) -> str:
     hetero = [z for z in elements if z != 6]
     if not hetero:
         return "on C only"
-    if len(hetero) > 1 and 8 in hetero:
-        return "on O and another heteroatom"
-    z = hetero[0]
-    if z in _HALOGENS:
+    if 8 in hetero:
+        return "on O" if len(hetero) == 1 else "on O and another heteroatom"
+    # The order of the questions, not that of the atoms, decides between two heteroatoms.
+    if not _HALOGENS.isdisjoint(hetero):
         return "on halogen"
-    return {7: "on N", 8: "on O", 16: "on S"}.get(z, "on another heteroatom")
+    if 7 in hetero:
+        return "on N"
+    return "on S" if 16 in hetero else "on another heteroatom"
 
 
-def _classify_hydride(atom, z):
+def _classify_hydride(table: AtomTable, i: int) -> str:
+    z = table.elements[i]
     if z not in _LABILE:
         return "unusual H"
     if z == 16:
         return "S-H"
+    neighbours = table.neighbours[i]
     if z == 8:
-        for neighbour in atom.GetNeighbors():
-            if neighbour.GetIsAromatic():
+        for j in neighbours:
+            if table.aromatic[j]:
                 return "O-H, phenol"
-            if neighbour.GetAtomicNum() == 6:
-                acid = any(b.GetBondType() == _DOUBLE and b.GetOtherAtom(neighbour).GetAtomicNum() == 8 for b in neighbour.GetBonds())
-                if acid:
+            if table.elements[j] == 6:
+                if _is_doubly_bonded_to(table, j, (8,)):
                     return "O-H, acid"
-                return "O-H, enol" if neighbour.GetHybridization() == _SP2 else "O-H, alcohol"
+                return "O-H, enol" if table.degrees[j] == 3 else "O-H, alcohol"
         return "O-H, on heteroatom"
-    if atom.GetIsAromatic():
+    if table.aromatic[i]:
         return "N-H, aromatic"
-    for neighbour in atom.GetNeighbors():
-        if any(b.GetBondType() == _DOUBLE and b.GetOtherAtom(neighbour).GetAtomicNum() in (8, 16) for b in neighbour.GetBonds()):
-            return "N-H, amide"
-    if any(n.GetIsAromatic() for n in atom.GetNeighbors()):
+    if any(_is_doubly_bonded_to(table, j, (8, 16)) for j in neighbours):
+        return "N-H, amide"
+    if any(table.aromatic[j] for j in neighbours):
         return "N-H, aniline"
     return "N-H, amine"
+
+
+def _is_doubly_bonded_to(table: AtomTable, i: int, elements: tuple[int, ...]) -> bool:
+    return any(order == _DOUBLE and table.elements[j] in elements for order, j in zip(table.orders[i], table.neighbours[i]))
