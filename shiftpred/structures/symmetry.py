@@ -11,7 +11,7 @@ admitted if some choice of configurations allows it (2,3-butanediol, meso or not
 
 from __future__ import annotations
 
-from itertools import chain, permutations, product
+from itertools import permutations, product
 
 from shiftpred.structures.atom_table import AtomTable
 from shiftpred.structures.stereo_elements import StereoElements, compute_parity
@@ -19,6 +19,7 @@ from shiftpred.structures.stereo_elements import StereoElements, compute_parity
 __all__ = ["SymmetrySearch"]
 
 _MOST_STEPS = 20_000
+_MOST_EQUAL = 5  # equal neighbours of one atom whose permutations are all tried; more occur only around metals
 
 
 class SymmetrySearch:
@@ -87,28 +88,39 @@ class SymmetrySearch:
 
     def _extend(self):
         """Place the rest atom by atom; where several choices are left, try each in turn."""
+        neighbours, rank, image, source = self.neighbours, self.rank, self.image, self.source
         while True:
             u = self._next()
             if u is None:
                 return self._close_cycles()
-            choices = self._list_choices(u)
-            first = next(choices, None)
-            if first is None:
+            free = [w for w in neighbours[u] if w not in image]
+            if free:
+                targets = [x for x in neighbours[image[u]] if x not in source]
+                place = {rank[x]: x for x in targets}
+                if len(targets) != len(free):
+                    return False
+                if len(place) < len(targets):
+                    return self._branch(u, free, targets)
+                try:
+                    pairs = [(w, place[rank[w]]) for w in free]
+                except KeyError:
+                    return False
+            else:
+                pairs = ()
+            if not self._settle(u, pairs):
                 return False
-            second = next(choices, None)
-            if second is None:
-                if not self._settle(u, first):
-                    return False
-                continue
-            mark = self._mark()
-            for choice in chain((first, second), choices):
-                self.steps += 1
-                if self.steps > _MOST_STEPS:
-                    return False
-                if self._settle(u, choice) and self._extend():
-                    return True
-                self._undo(mark)
-            return False
+
+    def _branch(self, u, free, targets):
+        """Try the ways to send the neighbours of u that are not placed yet, the one that moves least first."""
+        mark = self._mark()
+        for pairs in self._list_choices(free, targets):
+            self.steps += 1
+            if self.steps > _MOST_STEPS:
+                return False
+            if self._settle(u, pairs) and self._extend():
+                return True
+            self._undo(mark)
+        return False
 
     def _next(self):
         """Return the next atom whose neighbours are to be placed; None if all the rest may stay where it is."""
@@ -126,20 +138,8 @@ class SymmetrySearch:
                 return u
         return None
 
-    def _list_choices(self, u):
-        """Yield the ways to send the neighbours of u that are not placed yet, the one that moves least first."""
-        free = [w for w in self.neighbours[u] if w not in self.image]
-        if not free:
-            yield ()
-            return
-        targets = [x for x in self.neighbours[self.image[u]] if x not in self.source]
-        if len(free) != len(targets):
-            return
+    def _list_choices(self, free, targets):
         rank = self.rank
-        if len(free) == 1:
-            if rank[free[0]] == rank[targets[0]]:
-                yield ((free[0], targets[0]),)
-            return
         groups: dict[int, tuple[list[int], list[int]]] = {}
         for w in free:
             groups.setdefault(rank[w], ([], []))[0].append(w)
@@ -152,12 +152,11 @@ class SymmetrySearch:
             if len(own) != len(others):
                 return
             # Those that can stay stand at their own places, so that the first permutation keeps them.
-            stay = set(own) & set(others)
-            spare = iter([x for x in others if x not in stay])
-            ordered = [w if w in stay else next(spare) for w in own]
-            ways.append([tuple(zip(own, p)) for p in permutations(ordered)] if len(own) < 6 else [tuple(zip(own, ordered))])
+            spare = iter([x for x in others if x not in own])
+            ordered = [w if w in others else next(spare) for w in own]
+            ways.append([tuple(zip(own, p)) for p in (permutations(ordered) if len(own) <= _MOST_EQUAL else (ordered,))])
         for way in product(*ways):
-            yield tuple(pair for part in way for pair in part)
+            yield [pair for part in way for pair in part]
 
     def _settle(self, u, pairs):
         """Place the neighbours of u and check the stereo elements that are complete with it."""
