@@ -138,11 +138,11 @@ def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scal
             else:
                 placed = (("", shift),)
             for hydrogen, ppm in placed:
-                ppm = round(ppm, 3)
+                ppm = round(ppm, 4)
                 rows.append(
                     NucleusPrediction(
-                        nucleus, i, site.atom, hydrogen, site.attached_h, equivalent, ppm, round(ppm - half, 3),
-                        round(ppm + half, 3), coverage, scale * t_scale, degrees, environment,
+                        nucleus, i, site.atom, hydrogen, site.attached_h, equivalent, ppm, round(ppm - half, 4),
+                        round(ppm + half, 4), coverage, scale * t_scale, degrees, environment,
                         nucleus == "1H" and site.labile, note,
                     )
                 )

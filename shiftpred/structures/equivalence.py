@@ -267,6 +267,8 @@ class _Groups:
             return chiral or self.search.find(((i, i), *((k, k) for k in ligands)), -1, strict=True) is None
         if len(ligands) + table.hydrogens[end] < 2:
             return table.elements[end] == 7 and len(ligands) == 1  # C=N-X: bent at nitrogen
+        if not ligands:
+            return False  # ethylene: two hydrogens at either end
         if len(ligands) == 1 or rank[ligands[0]] != rank[ligands[1]]:
             return len(ligands) > 0
         x, y = ligands

@@ -38,6 +38,8 @@ def groups(smiles):
     ("cis-1,4-dimethylcyclohexane", "C[C@H]1CC[C@@H](C)CC1", [[0, 5], [1, 4], [2, 3, 6, 7]], [2, 3, 6, 7]),
     ("neopentane", "CC(C)(C)C", [[0, 2, 3, 4]], []),
     ("tert-butyl in a chiral molecule", "CC(C)(C)OC(=O)C(C)N", [[0, 2, 3]], []),
+    ("ethylene", "C=C", [[0, 1]], []),
+    ("formaldehyde", "C=O", [], []),
     ("p-xylene", "Cc1ccc(C)cc1", [[0, 5], [1, 4], [2, 3, 6, 7]], []),
     ("acetamide: NH2", "CC(N)=O", [], [2]),
     ("diethyl ether", "CCOCC", [[0, 4], [1, 3]], []),
