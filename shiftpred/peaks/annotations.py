@@ -160,9 +160,12 @@ def _read_item(item: str, nucleus: str, out: Annotation) -> bool:
 def _read_hydrogens(item: str, out: Annotation) -> bool:
     found = _HYDROGENS.fullmatch(item)
     if found:
-        out.hydrogens = float(found.group(2)) * int(found.group(1) or 1)
+        hydrogens = float(found.group(2)) * int(found.group(1) or 1)
+        if hydrogens == 0:
+            return False  # '0H', as some programs print for the solvent, counts nothing
+        out.hydrogens = hydrogens
         out.each = out.each or found.group(3) == "each" or item.lower().startswith("each")
-        return out.hydrogens > 0
+        return True
     methyls = re.fullmatch(r"(\d)\s?x\s?(?:[ONS]|Ar)?-?CH3", item)
     if methyls:  # '2 × CH3': six hydrogens, unless the bracket counts them itself
         out.hydrogens = out.hydrogens or 3.0 * int(methyls.group(1))

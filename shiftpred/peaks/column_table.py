@@ -29,6 +29,7 @@ COLUMNS = {
 }  # fmt: skip
 """Column → spellings of its heading (case, blanks and units in brackets do not matter). A table with both a `13C` and a `1H`
 column holds C-H pairs."""
+_LONGEST_HEADING = 2_000
 _SPELLING = {s: c for c, spellings in COLUMNS.items() for s in spellings}
 _OF_NUCLEUS = {
     "13C": ("13c", "c13", "δc", "13c_ppm", "c_ppm", "13c_shift", "13c_shift_ppm"),
@@ -39,7 +40,7 @@ _OF_NUCLEUS = {
 def is_column_table(text: str) -> bool:
     """Say whether the first line (comments left out) is a heading that names a shift column."""
     lines = _data_lines(text)
-    if not lines:
+    if not lines or len(lines[0][1]) > _LONGEST_HEADING:
         return False
     _, names = _split_heading(lines[0][1])
     if not all(re.fullmatch(r"[^\d.]*(?:13c|1h|c13|h1|f1)?[^\d]*", n) for n in names):

@@ -38,6 +38,7 @@ _FREQUENCY = re.compile(r"(\d{2,4}(?:\.\d{1,4})?)\s?M\s?Hz", re.IGNORECASE)
 _TEMPERATURE = re.compile(r"[+-]?\d{1,3}(?:\.\d{1,2})?\s?(?:K\b|°\s?C|o\s?C\b|ºC|℃)")
 _TOKEN = re.compile(r"[\[(]?[A-Za-z0-9][\w\[\]().+'-]*")
 _WORD = re.compile(r"[A-Za-z][A-Za-z.'-]*")
+_LONGEST_HEADING = 600
 _NOT_SOLVENTS = {
     "tms",
     "dss",
@@ -241,6 +242,7 @@ def _name_solvents(text: str) -> list[str]:
 
 def _store_conditions(text: str, nucleus: str, section: Section) -> None:
     """Take solvent and frequency from the heading; say what was made of them."""
+    text = text[:_LONGEST_HEADING]
     names = _name_solvents(text)
     if len(names) > 1:
         section.solvent = "mixture"

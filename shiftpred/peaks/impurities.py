@@ -358,8 +358,8 @@ def _match_nucleus(lines, shifts, hidden, labels):
             misfit += distance / line.tolerance_ppm
         elif line.labile:
             continue
-        elif any(abs(x - line.shift_ppm) <= line.tolerance_ppm for x in hidden):
-            misfit += 1.0
+        elif any(abs(x - line.shift_ppm) <= line.tolerance_ppm for x in [*hidden, *shifts]):
+            misfit += 1.0  # under a line of the structure, of the solvent, or of the impurity itself
         else:
             absent = True
     return keys, misfit, absent

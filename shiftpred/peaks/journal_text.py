@@ -14,10 +14,10 @@ from dataclasses import replace
 
 from shiftpred.peaks.annotations import Annotation, parse_annotation
 from shiftpred.peaks.headings import find_section
-from shiftpred.peaks.text_cleaning import CleanText, clean_text, describe_place, read_place
+from shiftpred.peaks.text_cleaning import CleanText, clean_text, describe_place, read_as_given, read_place
 from shiftpred.records import Peak, PeakList
 
-__all__ = ["parse_journal_text"]
+__all__ = ["MOST_PEAKS", "parse_journal_text"]
 
 _VALUE = r"[-+]?(?:\d+(?:\.\d+)?|\.\d+)"
 _NUMBER = re.compile(_VALUE)
@@ -42,8 +42,13 @@ _BARE_CARBON = re.compile(
     r"[\s,]{0,3}(?:\d{1,2}\s?x\s?)?(?:\d{1,2}\s?C(?![\w-])|(?:[ONS]|Ar)?CH[23]?(?![\w-])|Cq(?!\w)|C=O|CO(?!\w)|C(?![\w(\-=≡]))"
 )
 _DECIMAL_COMMA = re.compile(r"(?<![\d.,])(?<![A-Za-z]-)(?<![A-Za-z])\d{1,3},\d{1,3}(?![\d.])(?!,\d)(?!\s?[HCx]\b)")
+_ONLY_COUPLINGS = re.compile(r"\s*\d{1,2}\.\d{1,2}(?:\s?[,;/]\s?\d{1,2}\.\d{1,2})*(?:\s?Hz)?\s*")
 _WIDEST_RANGE = {"13C": 40.0, "1H": 8.0}
 """ppm; a wider one is a misprint or two shifts joined by a dash (common practice, no source)."""
+MOST_PEAKS = 2_000
+"""More are refused: they are the points of a spectrum."""
+_MOST_PROBLEMS = 1_000
+"""After so many the rest is not looked at."""
 _ADVICE_COMMA = "decimal comma, or a list without spaces"
 
 
@@ -87,6 +92,7 @@ def parse_journal_text(text: str, nucleus: str) -> tuple[PeakList, list[tuple[st
             problems, notes = scanner.problems, notes + scanner.notes
             if numbered:
                 notes.append("the counting numbers at the beginning of the lines were left out")
+            problems += _find_doubtful_pairs(scanner.peaks)
             peaks = _orient_pairs(scanner.peaks, nucleus, notes)
             peaks = _use_multiplicity_letters(peaks, nucleus, notes)
             peaks = [replace(p, position=k) for k, p in enumerate(peaks, 1)]
@@ -160,11 +166,13 @@ class _Scanner:
         self.problems: list[tuple[str, str, str]] = []
         self.notes: list[str] = []
         self.closing = _match_brackets(self.text)
+        self.line_begins = True
+        """True while nothing but blanks was read on the line."""
         self.label_at: int | None = None
         """Where a label before the next peak begins ('C-1: 166.6')."""
 
     def run(self) -> None:
-        while self.at < self.end:
+        while self.at < self.end and len(self.problems) < _MOST_PROBLEMS and len(self.peaks) <= MOST_PEAKS:
             if not self._skip_separators():
                 self._read_peak()
 
@@ -174,13 +182,14 @@ class _Scanner:
         if at in self.numbered:
             self.at = self.numbered[at]
             return True
-        at_line_start = not text[:at].rsplit("\n", 1)[-1].strip()
-        if at_line_start and (bullet := _BULLET.match(text, at)):
-            self.at = bullet.end()
+        if self.line_begins and (bullet := _BULLET.match(text, at)):
+            self.at, self.line_begins = bullet.end(), False
             return True
         if text[at] in " \n,;|•" or (text[at] == "." and not re.match(r"\.\d", text[at : at + 2])):
+            self.line_begins = text[at] == "\n" or (self.line_begins and text[at] == " ")
             self.at += 1
             return True
+        self.line_begins = False
         for pattern in (_JOINING, _IDLE, _LABEL_BEFORE):
             found = pattern.match(text, at, self.end)
             if found:
@@ -268,6 +277,7 @@ class _Scanner:
             found.carbons = int(next(g for g in times.groups() if g))
         unit = _UNIT.match(text, self.at, self.end)
         self.at = unit.end() if unit else self.at
+        bare_multiplicity = False
         bare = _BARE if self.nucleus == "1H" else re.compile(f"(?:{_BARE_CARBON.pattern})|(?:{_BARE.pattern})")
         while self.at < self.end:
             bracket = re.compile(r"\s*[(\[]").match(text, self.at, self.end)
@@ -277,20 +287,25 @@ class _Scanner:
                 if closing is None:
                     self.at = min(self.end, max(self._next_line(self.at), self.at + 1))
                     return peak, found, "a bracket that is not closed"
-                found.merge(parse_annotation(text[opening + 1 : closing], self.nucleus))
+                inside = text[opening + 1 : closing]
+                if bare_multiplicity and _ONLY_COUPLINGS.fullmatch(inside):
+                    found.couplings_hz += [float(x) for x in _NUMBER.findall(inside)]  # '7.26 d (8.0)'
+                else:
+                    found.merge(parse_annotation(inside, self.nucleus))
                 self.at = closing + 1
                 continue
             word = bare.match(text, self.at, self.end)
             if word is None:
                 break
             found.merge(parse_annotation(word.group().strip(" ,\n"), self.nucleus))
+            bare_multiplicity = found.multiplicity not in (None, "s", "m", "br s")
             self.at = word.end()
         return peak, found, found.problem
 
     def _store(self, peak: Peak, found: Annotation, begin: int) -> None:
         start = begin if self.label_at is None else self.label_at
         self.label_at = None
-        _, written = read_place(self.clean, self.given, start, self.at)
+        written = read_as_given(self.clean, self.given, start, self.at)
         bare = found == Annotation()
         peak = replace(
             peak,
@@ -363,6 +378,15 @@ def _match_brackets(text: str) -> dict[int, int]:
                 if stack:
                     out[stack.pop()[1]] = at
     return out
+
+
+def _find_doubtful_pairs(peaks: list[Peak]) -> list[tuple[str, str, str]]:
+    """A carbon and its hydrogen do not have nearly the same shift: '1.47/1.40' are two shifts of one nucleus."""
+    return [
+        (f"peak {k}", p.text, "two shifts of one nucleus, or a C-H pair? put a comma between two shifts")
+        for k, p in enumerate(peaks, 1)
+        if p.pair_ppm is not None and abs(p.shift_ppm - p.pair_ppm) < 1.0 and max(p.shift_ppm, p.pair_ppm) > 1.0
+    ]
 
 
 def _orient_pairs(peaks: list[Peak], nucleus: str, notes: list[str]) -> list[Peak]:

@@ -93,12 +93,12 @@ def _require_finite(found: PeakList, where: str) -> None:
 def _require_own_nucleus(found: PeakList, where: str) -> None:
     """Tell a 13C list from a 1H list by its middle, its highest shift, and hydrogens counted in brackets."""
     shifts = sorted(p.shift_ppm for p in found.peaks)
-    middle, highest = shifts[len(shifts) // 2], shifts[-1]
+    middle, highest = shifts[(len(shifts) - 1) // 2], shifts[-1]
     counted = sum(bool(re.search(r"(?<![\w.])\d{1,2}\s?H\b", p.text)) for p in found.peaks)
     if found.nucleus == "1H" and len(shifts) > 1 and middle > _LOWEST_OF_A_CARBON_LIST and highest < 300:
         came = f"shifts up to {highest:g} ppm, half of them above {_LOWEST_OF_A_CARBON_LIST:g}, which look like a 13C list"
         raise PeakListError(where, came, "1H shifts in ppm", "give them as --c13", [("whole list", "", came)])
-    if found.nucleus == "13C" and highest < _HIGHEST_OF_A_PROTON_LIST and (len(shifts) > 2 or counted):
+    if found.nucleus == "13C" and -5 < shifts[0] and highest < _HIGHEST_OF_A_PROTON_LIST and (len(shifts) > 2 or counted):
         came = f"shifts of {shifts[0]:g} to {highest:g} ppm, which look like a 1H list"
         raise PeakListError(where, came, "13C shifts in ppm", "give them as --h1", [("whole list", "", came)])
 

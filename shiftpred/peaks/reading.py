@@ -13,7 +13,7 @@ from pathlib import Path
 
 from shiftpred.errors import quote
 from shiftpred.peaks.column_table import is_column_table, parse_column_table, parse_row
-from shiftpred.peaks.journal_text import parse_journal_text
+from shiftpred.peaks.journal_text import MOST_PEAKS, parse_journal_text
 from shiftpred.peaks.plausibility import require_plausible
 from shiftpred.peaks.problems import PeakListError
 from shiftpred.records import NUCLEI, Peak, PeakList
@@ -22,7 +22,6 @@ __all__ = ["LARGEST_TEXT", "MOST_PEAKS", "PeakListError", "parse_peaks"]
 
 LARGEST_TEXT = 200_000
 """Characters; longer texts are refused."""
-MOST_PEAKS = 2_000
 _ENDINGS = (".txt", ".csv", ".tsv", ".dat", ".peaks", ".md", ".gz")
 _EXAMPLES = "peaks such as '166.6, 132.8' or '7.42 (m, 2H)'"
 _ADVICE = (
@@ -82,7 +81,10 @@ def parse_peaks(source, nucleus: str, *, where: str | None = None) -> PeakList:
         raise PeakListError(where, "an empty list", "at least one peak", "leave it out if the spectrum was not measured")
     if len(found.peaks) > MOST_PEAKS:
         raise PeakListError(
-            where, f"{len(found.peaks):,} peaks", f"at most {MOST_PEAKS:,}", "give picked lines, not the points of a spectrum"
+            where,
+            f"more than {MOST_PEAKS:,} peaks",
+            f"at most {MOST_PEAKS:,}",
+            "give picked lines, not the points of a spectrum",
         )
     return found if isinstance(source, PeakList) and found.notes else require_plausible(found, where)
 

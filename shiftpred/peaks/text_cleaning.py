@@ -6,7 +6,7 @@ import html
 import re
 from dataclasses import dataclass
 
-__all__ = ["CleanText", "clean_text", "describe_place", "read_place"]
+__all__ = ["CleanText", "clean_text", "describe_place", "read_as_given", "read_place"]
 
 _HYPHENS = "\u2010\u2011\u2212\ufe63\uff0d"  # hyphen, non-breaking hyphen, minus sign, small hyphen, fullwidth hyphen
 _DASHES = "\u2012\u2013\u2014\u2015"  # figure dash, en dash, em dash, bar: they mean a range, never a sign
@@ -109,5 +109,9 @@ def describe_place(given: str, index: int) -> str:
 
 def read_place(clean: CleanText, given: str, begin: int, end: int) -> tuple[str, str]:
     """Return (place, text as given) of a stretch of the clean text."""
-    first, last = clean.origin[begin], clean.origin[min(end, len(clean.text))]
-    return describe_place(given, first), given[first:last].strip()
+    return describe_place(given, clean.origin[begin]), read_as_given(clean, given, begin, end)
+
+
+def read_as_given(clean: CleanText, given: str, begin: int, end: int) -> str:
+    """Return a stretch of the clean text as it was given."""
+    return given[clean.origin[begin] : clean.origin[min(end, len(clean.text))]].strip()
