@@ -192,7 +192,7 @@ def _corrupted_lists(sample, corruption, random):
 
 
 def calibrate_judgement(
-    cases: list[JudgementCase], most_wrong: float = 0.01, most_right: float = 0.008, report: Callable[[str], None] = print
+    cases: list[JudgementCase], most_wrong: float = 0.02, most_right: float = 0.01, report: Callable[[str], None] = print
 ) -> dict:
     """Fit maps, gate and thresholds.
 
