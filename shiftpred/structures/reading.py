@@ -91,7 +91,9 @@ def parse_structures(source, name: str | None = None) -> Iterator[Structure | Re
     elif isinstance(source, Iterable):
         for number, one in enumerate(source, 1):
             try:
-                if isinstance(one, (Structure, Chem.Mol)):
+                if isinstance(one, RecordFailure):
+                    yield one
+                elif isinstance(one, (Structure, Chem.Mol)):
                     label = (one.name if isinstance(one, Structure) else _name_of(one)) or str(number)
                     yield one if isinstance(one, Structure) else _attempt(label, lambda one=one, label=label: _build(one, label, "molecule"))
                 elif isinstance(one, str):

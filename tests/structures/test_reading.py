@@ -137,6 +137,11 @@ def test_iterable_goes_on_after_a_bad_one():
     assert [type(r) for r in records] == [Structure, RecordFailure, RecordFailure, Structure]
 
 
+def test_records_read_before_are_handed_on():
+    records = read(["CCO", "bad one"])
+    assert [type(r) for r in read(records)] == [Structure, RecordFailure] and read(records)[1] is records[1]
+
+
 def test_several_records_where_one_is_wanted(tmp_path):
     path = tmp_path / "some.smi"
     path.write_text("CCO\nCCC\n")
