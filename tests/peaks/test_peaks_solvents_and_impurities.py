@@ -23,6 +23,12 @@ from shiftpred.peaks import (
 from shiftpred.peaks.solvents import load_table
 
 WITH_COLUMN = ("CDCl3", "DMSO-d6", "CD3OD", "D2O", "acetone-d6", "C6D6", "CD3CN")
+OWN = {
+    *(f"{s} (solvent)" for s in WITH_COLUMN),
+    *("CHCl3 in CDCl3 (residual)", "DMSO-d5 (residual)", "CHD2OD (residual)", "acetone-d5 (residual)", "C6D5H (residual)"),
+    *("CHD2CN (residual)", "HDO (residual)", "water"),
+}
+"""Rows of the measured table that are lines of the solvent itself."""
 ETHYL_ACETATE = {"13C": [171.36, 60.49, 21.04, 14.19], "1H": [4.12, 2.05, 1.26]}
 """In CDCl3 (Gottlieb 1997, Fulmer 2010)."""
 
@@ -131,6 +137,15 @@ def test_every_line_that_was_seen_is_in_the_measured_table():
         if x.verified == "transcription"
     ]
     assert len(seen) > 1500 and set(seen) <= measured
+    own = [
+        line
+        for s in WITH_COLUMN
+        for n in ("13C", "1H")
+        for line in (*solvent_lines(s, n), *([water_line(s)] if n == "1H" else ()))
+    ]
+    verified = {(r["solvent"], r["nucleus"], float(r["shift_ppm"])): r["verified"] for r in read_measured() if r["name"] in OWN}
+    for line in own:
+        assert line.verified == verified[line.solvent, line.nucleus, line.shift_ppm], line
 
 
 def test_suspected_misprints_are_not_in_the_table():
