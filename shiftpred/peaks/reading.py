@@ -86,7 +86,10 @@ def parse_peaks(source, nucleus: str, *, where: str | None = None) -> PeakList:
             f"at most {MOST_PEAKS:,}",
             "give picked lines, not the points of a spectrum",
         )
-    return found if isinstance(source, PeakList) and found.notes else require_plausible(found, where)
+    if any(p.position == 0 for p in found.peaks):
+        found = replace(found, peaks=tuple(replace(p, position=k) for k, p in enumerate(found.peaks, 1)))
+    found = require_plausible(found, where)
+    return replace(found, notes=tuple(dict.fromkeys(found.notes)))
 
 
 def _parse_text_or_file(source, nucleus: str, where: str) -> tuple[PeakList, str]:

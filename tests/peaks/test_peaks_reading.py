@@ -161,6 +161,14 @@ def test_unusual_shifts_and_doubles_are_noted():
     assert "unusual" in parse_peaks("-12.5, 7.3", "1H").notes[0]  # a metal hydride
 
 
+def test_a_list_that_was_read_before_is_checked_and_notes_stay_single():
+    once = parse_peaks("128.4, 128.4", "13C")
+    assert parse_peaks(once, "13C") == once
+    by_hand = PeakList("1H", (Peak("1H", 7.2, 7.2, 7.2), Peak("1H", 128.4, 128.4, 128.4)), notes=("by hand",))
+    with pytest.raises(PeakError, match="peak 2"):
+        parse_peaks(by_hand, "1H")
+
+
 def test_where_names_the_argument():
     with pytest.raises(PeakError, match="^sample 7, c13, character 1: "):
         parse_peaks("x", "13C", where="sample 7, c13")
