@@ -13,7 +13,16 @@ from shiftpred.predicting import predict_molecules, select_nucleus
 from shiftpred.records import Comparison, Explanation, MoleculePrediction, Ranking, RecordFailure, Structure
 from shiftpred.structures.reading import parse_structure, parse_structures
 
-__all__ = ["compare", "explain", "iterate_predictions", "load_model", "predict", "predict_structures", "rank", "rank_structures"]
+__all__ = [
+    "compare",
+    "explain",
+    "iterate_predictions",
+    "load_model",
+    "predict",
+    "predict_structures",
+    "rank",
+    "rank_structures",
+]
 
 
 def load_model(model: ModelBundle | str | None = None) -> ModelBundle:
@@ -118,7 +127,16 @@ def explain(
     chosen, shift = select_nucleus(prediction, atom_index, nucleus)
     parts = build_explanation_parts(read, chosen.atom_index, nucleus, bundle.substituent_model, shift, prediction.solvent)
     return Explanation(
-        read, nucleus, chosen.atom_index, chosen.atom, shift, chosen.lower_ppm, chosen.upper_ppm, coverage, parts, bundle.edition,
+        read,
+        nucleus,
+        chosen.atom_index,
+        chosen.atom,
+        shift,
+        chosen.lower_ppm,
+        chosen.upper_ppm,
+        coverage,
+        parts,
+        bundle.edition,
         read.notes,
     )
 
@@ -235,5 +253,7 @@ def rank(structures, c13=None, h1=None, solvent: str | None = None, model=None, 
     import pandas as pd
 
     found = rank_structures(structures, c13, h1, solvent, model, **settings).candidates
-    return pd.DataFrame([dict(candidate=r.candidate, probability=r.probability, misfit=r.misfit) for r in found],
-                        columns=["candidate", "probability", "misfit"])
+    return pd.DataFrame(
+        [dict(candidate=r.candidate, probability=r.probability, misfit=r.misfit) for r in found],
+        columns=["candidate", "probability", "misfit"],
+    )

@@ -5,8 +5,6 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 from itertools import islice
 
-import numpy as np
-
 from shiftpred.bundles import ModelBundle
 from shiftpred.calibration.intervals import require_coverage
 from shiftpred.calibration.novelty import NEW_NEIGHBOURS, NEW_SURROUNDINGS, compute_surroundings_codes
@@ -93,7 +91,8 @@ def select_nucleus(prediction: MoleculePrediction, atom_index: int, nucleus: str
     if not rows:
         atoms = [n.atom for n in prediction.nuclei if n.nucleus == nucleus and n.hydrogen in ("", "a")]
         raise SettingError(
-            "atom", f"atom_index {atom_index!r}, which has no {nucleus} here",
+            "atom",
+            f"atom_index {atom_index!r}, which has no {nucleus} here",
             f"an atom with a {nucleus} nucleus (numbers from 1: {', '.join(map(str, atoms[:30])) or 'none'})",
             "atom numbers on the command line count from 1, atom_index in Python from 0",
         )
@@ -141,9 +140,21 @@ def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scal
                 ppm = round(ppm, 4)
                 rows.append(
                     NucleusPrediction(
-                        nucleus, i, site.atom, hydrogen, site.attached_h, equivalent, ppm, round(ppm - half, 4),
-                        round(ppm + half, 4), coverage, scale * t_scale, degrees, environment,
-                        nucleus == "1H" and site.labile, note,
+                        nucleus,
+                        i,
+                        site.atom,
+                        hydrogen,
+                        site.attached_h,
+                        equivalent,
+                        ppm,
+                        round(ppm - half, 4),
+                        round(ppm + half, 4),
+                        coverage,
+                        scale * t_scale,
+                        degrees,
+                        environment,
+                        nucleus == "1H" and site.labile,
+                        note,
                     )
                 )
     return MoleculePrediction(structure, sites, tuple(rows), solvent, bundle.edition, structure.notes)

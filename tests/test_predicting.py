@@ -10,9 +10,27 @@ from shiftpred.errors import SettingError
 from shiftpred.pipeline import iterate_predictions
 from shiftpred.structures import parse_structures
 
-COLUMNS = ["molecule", "atom", "nucleus", "hydrogen", "attached_h", "equivalent_atoms", "shift_ppm", "lower_ppm", "upper_ppm",
-           "coverage", "environment", "note"]
-SMILES = ["CCOC(=O)c1ccccc1", "CC(C)[C@H](N)C(=O)O", "C/C=C\\C(=O)N(C)C", "O=[N+]([O-])c1ccc(F)cc1", "C[C@]12CC[C@H]3[C@@H](CCC4=CC(=O)CC[C@@]34C)[C@@H]1CC[C@@H]2O"]
+COLUMNS = [
+    "molecule",
+    "atom",
+    "nucleus",
+    "hydrogen",
+    "attached_h",
+    "equivalent_atoms",
+    "shift_ppm",
+    "lower_ppm",
+    "upper_ppm",
+    "coverage",
+    "environment",
+    "note",
+]
+SMILES = [
+    "CCOC(=O)c1ccccc1",
+    "CC(C)[C@H](N)C(=O)O",
+    "C/C=C\\C(=O)N(C)C",
+    "O=[N+]([O-])c1ccc(F)cc1",
+    "C[C@]12CC[C@H]3[C@@H](CCC4=CC(=O)CC[C@@]34C)[C@@H]1CC[C@@H]2O",
+]
 
 
 def by_rank(smiles_or_mol):
@@ -20,8 +38,12 @@ def by_rank(smiles_or_mol):
     mol = smiles_or_mol if isinstance(smiles_or_mol, Chem.Mol) else Chem.MolFromSmiles(smiles_or_mol)
     table = shiftpred.predict(smiles_or_mol)
     rank = list(Chem.CanonicalRankAtoms(mol, breakTies=False, includeChirality=False))
-    return sorted((rank[a - 1], n, h, s, lo, hi) for a, n, h, s, lo, hi in zip(
-        table.atom, table.nucleus, table.hydrogen, table.shift_ppm, table.lower_ppm, table.upper_ppm))
+    return sorted(
+        (rank[a - 1], n, h, s, lo, hi)
+        for a, n, h, s, lo, hi in zip(
+            table.atom, table.nucleus, table.hydrogen, table.shift_ppm, table.lower_ppm, table.upper_ppm
+        )
+    )
 
 
 def test_the_contracts_columns():
@@ -44,8 +66,16 @@ def test_atom_order_does_not_change_a_prediction(smiles):
         assert np.allclose([r[3:] for r in again], [r[3:] for r in reference], atol=2e-4)
 
 
-@pytest.mark.parametrize("one, other", [("c1ccccc1C", "C1=CC=CC=C1C"), ("CN(=O)=O", "C[N+](=O)[O-]"), ("CS(C)=O", "C[S+](C)[O-]"),
-                                        ("CCO", "[H]OC([H])([H])C([H])([H])[H]"), ("C[C@H](N)C(=O)O", "C[C@@H](N)C(=O)O")])
+@pytest.mark.parametrize(
+    "one, other",
+    [
+        ("c1ccccc1C", "C1=CC=CC=C1C"),
+        ("CN(=O)=O", "C[N+](=O)[O-]"),
+        ("CS(C)=O", "C[S+](C)[O-]"),
+        ("CCO", "[H]OC([H])([H])C([H])([H])[H]"),
+        ("C[C@H](N)C(=O)O", "C[C@@H](N)C(=O)O"),
+    ],
+)
 def test_drawings_and_mirror_images_agree(one, other):
     first, second = shiftpred.predict(one), shiftpred.predict(other)
     key = ["nucleus", "shift_ppm", "hydrogen"]
@@ -99,8 +129,14 @@ def test_bad_record_is_one_row():
     assert len(bad) == 1 and bad.shift_ppm.isna().all() and "5 bonds" in bad.note.iloc[0]
 
 
-@pytest.mark.parametrize("keywords, message", [({"nucleus": "13N"}, "nucleus: got '13N'"), ({"coverage": 2}, "coverage: got 2"),
-                                               ({"solvent": "brine"}, "solvent: got 'brine'")])
+@pytest.mark.parametrize(
+    "keywords, message",
+    [
+        ({"nucleus": "13N"}, "nucleus: got '13N'"),
+        ({"coverage": 2}, "coverage: got 2"),
+        ({"solvent": "brine"}, "solvent: got 'brine'"),
+    ],
+)
 def test_settings_outside_what_is_accepted(keywords, message):
     with pytest.raises(SettingError, match=message):
         shiftpred.predict("CCO", **keywords)

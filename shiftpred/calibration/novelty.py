@@ -12,9 +12,16 @@ FAMILIAR, NEW_SURROUNDINGS, NEW_NEIGHBOURS = 0, 1, 2
 """Levels of novelty: the atom with all atoms up to two bonds away, their hydrogens and rings occurs in training; only the atom
 with the elements and hybrids of its direct neighbours does; not even that."""
 
-_DISCRETE = [i for i, n in enumerate(ATOM_FEATURES) if n.split("_")[0] in ("element", "hydrogens", "neighbours", "positive",
-             "negative", "aromatic", "sp", "sp2", "sp3", "ring")]
-_COARSE = [i for i, n in enumerate(ATOM_FEATURES) if n.split("_")[0] in ("element", "positive", "negative", "aromatic", "sp", "sp2", "sp3")]
+_DISCRETE = [
+    i
+    for i, n in enumerate(ATOM_FEATURES)
+    if n.split("_")[0] in ("element", "hydrogens", "neighbours", "positive", "negative", "aromatic", "sp", "sp2", "sp3", "ring")
+]
+_COARSE = [
+    i
+    for i, n in enumerate(ATOM_FEATURES)
+    if n.split("_")[0] in ("element", "positive", "negative", "aromatic", "sp", "sp2", "sp3")
+]
 _OWN = _COARSE + [i for i, n in enumerate(ATOM_FEATURES) if n.split("_")[0] == "hydrogens"]
 _PAULING, _RADIUS = ATOM_FEATURES.index("pauling"), ATOM_FEATURES.index("covalent_radius")
 _ORDERS = [BOND_FEATURES.index(n) for n in ("single", "double", "triple", "aromatic", "other_order")]

@@ -84,8 +84,10 @@ def train_model(
     report(f"{len(compounds)} compounds: " + ", ".join(f"{n} {s}" for s, n in counts.items()))
     if counts["train"] < _FEWEST_COMPOUNDS or counts["calibration"] < 5:
         raise InputError(
-            str(tables), f"{counts['train']} compounds to train on and {counts['calibration']} to calibrate on",
-            f"at least {_FEWEST_COMPOUNDS} and 5", "add compounds; a small archive is best trained with --start-from",
+            str(tables),
+            f"{counts['train']} compounds to train on and {counts['calibration']} to calibrate on",
+            f"at least {_FEWEST_COMPOUNDS} and 5",
+            "add compounds; a small archive is best trained with --start-from",
         )
     starting, before = None, {}
     graphs = build_graphs(compounds, settings)
@@ -110,9 +112,12 @@ def train_model(
     log = (working / "rounds.jsonl").read_text(encoding="utf-8")
     origin = dict(
         tables={p.name: hashlib.sha256(p.read_bytes()).hexdigest() for p in sorted(tables.glob("*.csv*"))},
-        compounds=counts, settings=asdict(settings), started_from=str(start_from) if start_from else None,
+        compounds=counts,
+        settings=asdict(settings),
+        started_from=str(start_from) if start_from else None,
         versions={p: version(p) for p in ("numpy", "rdkit", "scikit-learn", "torch")} | {"python": platform.python_version()},
-        minutes=round((time.time() - begun) / 60, 1), held_out=dict(before=before, after=after),
+        minutes=round((time.time() - begun) / 60, 1),
+        held_out=dict(before=before, after=after),
     )
     build_bundle(output, compounds, graphs, arrays, origin, log, substituent_compounds, report)
     report(f"written to {output} after {(time.time() - begun) / 60:.0f} min")
@@ -120,8 +125,14 @@ def train_model(
 
 
 def build_bundle(
-    output: Path, compounds: list[Compound], graphs, arrays: dict[str, np.ndarray], origin: dict, log: str,
-    substituent_compounds: int = 12000, report: Callable[[str], None] = print,
+    output: Path,
+    compounds: list[Compound],
+    graphs,
+    arrays: dict[str, np.ndarray],
+    origin: dict,
+    log: str,
+    substituent_compounds: int = 12000,
+    report: Callable[[str], None] = print,
 ) -> None:
     """Calibrate a trained network, fit the substituent model to its assignments, and write the model folder.
 
@@ -147,24 +158,36 @@ def build_bundle(
     report("calibrating intervals")
     novelty_arrays = build_novelty_arrays([graphs[i] for i in train])
     intervals = fit_calibration(
-        [compounds[i] for i in calibration], [graphs[i] for i in calibration], [predicted[i] for i in calibration],
+        [compounds[i] for i in calibration],
+        [graphs[i] for i in calibration],
+        [predicted[i] for i in calibration],
         NoveltyTable(**novelty_arrays),
     )
     report("fitting the substituent model to the network's assignments")
     some = np.random.default_rng(origin["settings"]["random_seed"]).permutation(train)[:substituent_compounds]
     model = fit_substituent_model(
-        [compounds[i].mol for i in some], [_place(compounds[i], predicted[i]) for i in some],
+        [compounds[i].mol for i in some],
+        [_place(compounds[i], predicted[i]) for i in some],
         solvents=[_only_solvent(compounds[i]) for i in some],
     )
-    scale = compute_residual_scale(model, [compounds[i].mol for i in calibration], [_mask(compounds[i], predicted[i]) for i in calibration])
+    scale = compute_residual_scale(
+        model, [compounds[i].mol for i in calibration], [_mask(compounds[i], predicted[i]) for i in calibration]
+    )
     for nucleus, table in scale.items():
         model.set_residual_scale(nucleus, table)
     substituent_arrays, substituent_meta = model.to_arrays()
     set_aside = _list_set_aside([compounds[i] for i in train], [predicted[i] for i in train])
     save_bundle(
-        output, name=output.name, edition=time.strftime("%Y.%m.%d"), network_arrays=arrays, novelty_arrays=novelty_arrays,
-        calibration=dict(intervals=intervals), substituent_arrays=substituent_arrays, substituent_meta=substituent_meta,
-        origin=origin, texts={"rounds.jsonl": log, "set_aside.csv": set_aside},
+        output,
+        name=output.name,
+        edition=time.strftime("%Y.%m.%d"),
+        network_arrays=arrays,
+        novelty_arrays=novelty_arrays,
+        calibration=dict(intervals=intervals),
+        substituent_arrays=substituent_arrays,
+        substituent_meta=substituent_meta,
+        origin=origin,
+        texts={"rounds.jsonl": log, "set_aside.csv": set_aside},
     )
 
 
@@ -197,9 +220,7 @@ def load_measured_connectivities() -> frozenset[str]:
     """Return the connectivities of the measured shifts that models are checked against; they are never trained on."""
     path = find_datasets() / "measured_shifts" / "assigned_shifts.csv"
     if not path.exists():
-        raise SettingError(
-            str(path), "no such file", "the reference shifts shipped with shiftpred", "reinstall shiftpred"
-        )
+        raise SettingError(str(path), "no such file", "the reference shifts shipped with shiftpred", "reinstall shiftpred")
     import pandas as pd
 
     smiles = pd.read_csv(path).smiles.unique()

@@ -12,9 +12,7 @@ from shiftpred.errors import SettingError
 __all__ = ["iterate_results"]
 
 
-def iterate_results(
-    function: Callable, jobs: Iterable[tuple], processes: int = 2, scheduler: str | None = None
-) -> Iterator:
+def iterate_results(function: Callable, jobs: Iterable[tuple], processes: int = 2, scheduler: str | None = None) -> Iterator:
     """Run `function(*job)` for every job and yield results as they are ready.
 
     Parameters
@@ -73,13 +71,18 @@ def _iterate_cluster(function, jobs, scheduler):
         from dask.distributed import Client, as_completed
     except ImportError:
         raise SettingError(
-            "--scheduler", "an address, and dask.distributed is not installed", "the extra `cluster`", "pip install 'shiftpred[cluster]'"
+            "--scheduler",
+            "an address, and dask.distributed is not installed",
+            "the extra `cluster`",
+            "pip install 'shiftpred[cluster]'",
         ) from None
     try:
         client = Client(scheduler, timeout="20s")
     except (OSError, TimeoutError, ValueError) as error:
         raise SettingError(
-            "--scheduler", f"{scheduler!r}, which does not answer ({error})", "the address of a running scheduler, tcp://host:8786",
+            "--scheduler",
+            f"{scheduler!r}, which does not answer ({error})",
+            "the address of a running scheduler, tcp://host:8786",
             "start one with `dask scheduler` and workers with `dask worker ADDRESS`",
         ) from None
     with client:

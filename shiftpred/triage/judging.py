@@ -15,8 +15,19 @@ from shiftpred.triage.samples import Sample
 __all__ = ["ROW_COLUMNS", "compute_fingerprint", "judge_sample"]
 
 ROW_COLUMNS = (
-    "sample", "judgement", "probability", "reason_code", "sentence", "nearest_rival", "leftover_lines", "missing_nuclei",
-    "c13_offset_ppm", "h1_offset_ppm", "smiles", "report", "note",
+    "sample",
+    "judgement",
+    "probability",
+    "reason_code",
+    "sentence",
+    "nearest_rival",
+    "leftover_lines",
+    "missing_nuclei",
+    "c13_offset_ppm",
+    "h1_offset_ppm",
+    "smiles",
+    "report",
+    "note",
 )
 """Columns of the summary table; `judgement` is blank and `note` says why where a sample could not be judged."""
 
@@ -102,11 +113,18 @@ def _compare(sample: Sample, settings: dict, folder: Path, date: str) -> dict:
     rivals = document.get("rivals") or [{}]
     offsets = document.get("reference_offset_ppm") or {}
     return dict(
-        judgement=comparison.judgement, probability=round(comparison.probability, 4), reason_code=comparison.reason_code,
+        judgement=comparison.judgement,
+        probability=round(comparison.probability, 4),
+        reason_code=comparison.reason_code,
         sentence=comparison.reasons[0] if comparison.reasons else render_verdict_line(document),
-        nearest_rival=rivals[0].get("smiles", ""), leftover_lines=sum(u.likely is None for u in comparison.unexplained),
-        missing_nuclei=sum(not m.note for m in comparison.missing), c13_offset_ppm=offsets.get("13C", ""),
-        h1_offset_ppm=offsets.get("1H", ""), smiles=structure.smiles, report=report, note="; ".join(structure.notes),
+        nearest_rival=rivals[0].get("smiles", ""),
+        leftover_lines=sum(u.likely is None for u in comparison.unexplained),
+        missing_nuclei=sum(not m.note for m in comparison.missing),
+        c13_offset_ppm=offsets.get("13C", ""),
+        h1_offset_ppm=offsets.get("1H", ""),
+        smiles=structure.smiles,
+        report=report,
+        note="; ".join(structure.notes),
         thumbnail=render_structure_svg(document["structure"]),
     )
 
@@ -118,7 +136,9 @@ def _read_structure(sample: Sample):
         raise InputError(f"sample {sample.name}", "no structure", "a SMILES or a structure file", "fill in smiles")
     records = list(parse_structures(sample.structure, name=sample.name))
     if len(records) != 1:
-        raise InputError(f"sample {sample.name}", f"{len(records)} structures", "one structure", "give one sample for each structure")
+        raise InputError(
+            f"sample {sample.name}", f"{len(records)} structures", "one structure", "give one sample for each structure"
+        )
     if isinstance(records[0], RecordFailure):
         raise records[0].error
     return records[0]

@@ -33,7 +33,8 @@ def render_triage_page(rows: list[dict], edition: str, settings: dict, date: str
     counts = Counter(row["judgement"] or "unjudged" for row in rows)
     marks = {name: Markup(render_judgement_svg(name, 22)) for name in JUDGEMENT_COLOUR}
     shown = [
-        dict(row, picture=Markup(row.get("thumbnail") or ""), shown_probability=_render_probability(row["probability"])) for row in rows
+        dict(row, picture=Markup(row.get("thumbnail") or ""), shown_probability=_render_probability(row["probability"]))
+        for row in rows
     ]
     stated = {k.replace("_", " "): settings[k] for k in _KEEP if settings.get(k) not in (None, (), "", False)}
     return template.render(rows=shown, counts=counts, marks=marks, edition=edition, settings=stated, date=date)

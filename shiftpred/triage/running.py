@@ -27,8 +27,14 @@ _WORSE = {"supported": 0, "open": 1, "contradicted": 2}
 
 
 def run_triage(
-    samples: str | Path, output: str | Path, *, processes: int = 2, scheduler: str | None = None, fail_on: str | None = None,
-    date: str | None = None, **settings,
+    samples: str | Path,
+    output: str | Path,
+    *,
+    processes: int = 2,
+    scheduler: str | None = None,
+    fail_on: str | None = None,
+    date: str | None = None,
+    **settings,
 ) -> int:
     """Judge every sample and write `summary.csv`, `index.html`, `results/` and `reports/` to a folder.
 
@@ -134,11 +140,15 @@ def _lock(folder: Path) -> Iterator[None]:
         handle = os.open(lock, os.O_CREAT | os.O_EXCL | os.O_WRONLY)
     except FileExistsError:
         raise SettingError(
-            "--output", f"{str(folder)!r}, which another run is writing to", "a folder of its own for each run",
+            "--output",
+            f"{str(folder)!r}, which another run is writing to",
+            "a folder of its own for each run",
             f"wait for that run, or remove {folder / '.running'} if there is none",
         ) from None
     except OSError as error:
-        raise SettingError("--output", f"{str(folder)!r} ({error.strerror})", "a folder that can be written to", "choose another") from None
+        raise SettingError(
+            "--output", f"{str(folder)!r} ({error.strerror})", "a folder that can be written to", "choose another"
+        ) from None
     try:
         os.write(handle, str(os.getpid()).encode())
         os.close(handle)

@@ -95,12 +95,17 @@ def _read_workbook(path: Path) -> Iterator[list[str]]:
         from openpyxl import load_workbook
     except ImportError:
         raise InputError(
-            str(path), "an .xlsx file, and openpyxl is not installed", "a CSV, or the extra `tables`", "pip install 'shiftpred[tables]'"
+            str(path),
+            "an .xlsx file, and openpyxl is not installed",
+            "a CSV, or the extra `tables`",
+            "pip install 'shiftpred[tables]'",
         ) from None
     try:
         book = load_workbook(path, read_only=True, data_only=True)
     except Exception as error:
-        raise InputError(str(path), f"a workbook that cannot be read ({error})", "an .xlsx file", "save it again, or as CSV") from None
+        raise InputError(
+            str(path), f"a workbook that cannot be read ({error})", "an .xlsx file", "save it again, or as CSV"
+        ) from None
     for row in book.active.iter_rows(values_only=True):
         yield ["" if cell is None else str(cell) for cell in row]
 
@@ -110,7 +115,9 @@ def _parse_rows(rows: Iterator[list[str]], where: str) -> Iterator[Sample]:
     places = {c: next((header.index(s) for s in spellings if s in header), None) for c, spellings in _COLUMNS.items()}
     if places["smiles"] is None or places["c13"] is None and places["h1"] is None:
         raise InputError(
-            where, f"columns {', '.join(header) or 'none'}", "columns sample, smiles, c13, h1, solvent",
+            where,
+            f"columns {', '.join(header) or 'none'}",
+            "columns sample, smiles, c13, h1, solvent",
             "name the columns of structure and peaks smiles, c13 and h1",
         )
     number = 0
@@ -120,7 +127,13 @@ def _parse_rows(rows: Iterator[list[str]], where: str) -> Iterator[Sample]:
         number += 1
         cells = {c: row[k].strip() if k is not None and k < len(row) else "" for c, k in places.items()}
         yield Sample(
-            number, cells["sample"] or str(number), cells["smiles"], cells["c13"], cells["h1"], cells["solvent"], cells["frequency"]
+            number,
+            cells["sample"] or str(number),
+            cells["smiles"],
+            cells["c13"],
+            cells["h1"],
+            cells["solvent"],
+            cells["frequency"],
         )
     if number == 0:
         raise InputError(where, "a table without rows", "at least one sample", "check that the export worked")
@@ -138,7 +151,10 @@ def _parse_folder(folder: Path) -> Iterator[Sample]:
             found.setdefault(str(path.parent.relative_to(folder) / stem), {})["structure"] = str(path)
     if not found:
         raise InputError(
-            str(folder), "no samples", "NAME.smi (or .mol, .sdf) with NAME_13C.txt and NAME_1H.txt", "rename the files, or give a table"
+            str(folder),
+            "no samples",
+            "NAME.smi (or .mol, .sdf) with NAME_13C.txt and NAME_1H.txt",
+            "rename the files, or give a table",
         )
     for number, (name, files) in enumerate(sorted(found.items()), 1):
         yield Sample(number, name, files.get("structure", ""), files.get("c13", ""), files.get("h1", ""), "", "")

@@ -109,7 +109,9 @@ def test_hydrogen_counts_are_kept():
 
 def test_pairs_tell_two_carbons_apart():
     # two CH carbons that 13C alone would exchange; the hydrogens' shifts of the pairs put them right
-    prediction = build_prediction("Cc1ccoc1", {0: 9.5, 1: 120.0, 2: 112.6, 3: 142.6, 5: 139.6}, {0: 2.0, 2: 6.2, 3: 7.3, 5: 6.6})
+    prediction = build_prediction(
+        "Cc1ccoc1", {0: 9.5, 1: 120.0, 2: 112.6, 3: 142.6, 5: 139.6}, {0: 2.0, 2: 6.2, 3: 7.3, 5: 6.6}
+    )
     lists = build_peaks("13C", 9.5, 120.0, 112.6, {"shift_ppm": 140.9, "pair_ppm": 7.3}, {"shift_ppm": 141.2, "pair_ppm": 6.6})
     found = by_atom(fit(prediction, lists))
     assert found[4].observed_ppm == 140.9 and found[6].observed_ppm == 141.2
@@ -179,7 +181,9 @@ def test_labile_hydrogens_are_interchangeable_and_never_missed():
     assert by_atom(found, "1H")[1].interchangeable == (6,)
     absent = fit(build_prediction("Oc1ccc(N)cc1", {}, shifts, solvent="CD3OD"), build_peaks("1H", 6.6, 6.7), solvent="CD3OD")
     assert all("exchanges with CD3OD" in m.note for m in build_missing(absent))
-    none = fit(build_prediction("Cc1ccc(C)cc1", {}, {0: 2.3, 2: 7.0}, solvent="CD3OD"), build_peaks("1H", 7.0, 2.3), solvent="CD3OD")
+    none = fit(
+        build_prediction("Cc1ccc(C)cc1", {}, {0: 2.3, 2: 7.0}, solvent="CD3OD"), build_peaks("1H", 7.0, 2.3), solvent="CD3OD"
+    )
     assert absent.log_evidence > none.log_evidence - 1.0
 
 
@@ -199,7 +203,9 @@ def test_fast_azole_exchange_is_averaged():
 
 def test_a_second_set_of_lines_is_recognised_where_rotamers_are_possible():
     lines = [22.0, 170.0, 38.0, 53.0, 136.0, 128.0, 127.5, 127.2]
-    amide = build_prediction("CC(=O)N(C)Cc1ccccc1", {0: 22.0, 1: 170.0, 4: 38.0, 5: 53.0, 6: 136.0, 7: 128.0, 8: 127.5, 9: 127.2})
+    amide = build_prediction(
+        "CC(=O)N(C)Cc1ccccc1", {0: 22.0, 1: 170.0, 4: 38.0, 5: 53.0, 6: 136.0, 7: 128.0, 8: 127.5, 9: 127.2}
+    )
     found = fit(amide, build_peaks("13C", *lines, 21.4, 34.9, 49.5))
     assert {u.observed_ppm for u in build_unexplained(found) if (u.likely or "").startswith("second set")} == {21.4, 34.9, 49.5}
     ester = build_prediction("CC(=O)OCc1ccccc1", {0: 22.0, 1: 170.0, 4: 53.0, 5: 136.0, 6: 128.0, 7: 127.5, 8: 127.2})

@@ -36,7 +36,9 @@ def test_missing_file_is_refused(copy, file):
         load_bundle(copy)
 
 
-@pytest.mark.parametrize("number, fix", [(99, "install the version"), (0, "train the model anew"), ("x", "train the model anew")])
+@pytest.mark.parametrize(
+    "number, fix", [(99, "install the version"), (0, "train the model anew"), ("x", "train the model anew")]
+)
 def test_other_format_is_refused(copy, number, fix):
     manifest = json.loads((copy / "manifest.json").read_text())
     manifest["format"] = number

@@ -8,8 +8,24 @@ from pathlib import Path
 import pytest
 
 PACKAGE = Path(__file__).resolve().parents[2] / "shiftpred"
-ORDER = ["structures", "substituents", "electronics", "features", "regression", "calibration", "bundles", "predicting", "peaks",
-         "assignment", "judgement", "pipeline", "reporting", "triage", "training", "cli"]
+ORDER = [
+    "structures",
+    "substituents",
+    "electronics",
+    "features",
+    "regression",
+    "calibration",
+    "bundles",
+    "predicting",
+    "peaks",
+    "assignment",
+    "judgement",
+    "pipeline",
+    "reporting",
+    "triage",
+    "training",
+    "cli",
+]
 # Rooms that stand beside the way: a table of trade names and constants that both neighbours read.
 ALLOWED_BACK = {("substituents", "electronics"), ("structures", "substituents"), ("pipeline", "reporting")}
 
@@ -37,7 +53,12 @@ def test_every_room_is_in_the_order():
 def test_imports_point_one_way(path):
     own = room(path)
     for other, line in imported_rooms(path):
-        if other in ("errors", "records") or other == own or (own, other) in ALLOWED_BACK or own in ("__init__", "__main__", "records"):
+        if (
+            other in ("errors", "records")
+            or other == own
+            or (own, other) in ALLOWED_BACK
+            or own in ("__init__", "__main__", "records")
+        ):
             continue
         assert own in ORDER, f"{path.name}:{line}: {own} must not import {other}"
         assert ORDER.index(other) < ORDER.index(own), f"{path.name}:{line}: {own} imports {other}, against the order"

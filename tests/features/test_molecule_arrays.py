@@ -6,7 +6,14 @@ from rdkit import Chem
 
 from shiftpred.features.molecule_arrays import ATOM_FEATURES, BOND_FEATURES, build_molecule_arrays, join_molecule_arrays
 
-MOLECULES = ["CCO", "CC(=O)Oc1ccccc1C(=O)O", "C/C=C/C(=O)N(C)C", "C[C@H](N)C(=O)O", "C[C@@]12CCCC[C@H]1CCCC2", "O=[N+]([O-])c1ccccc1"]
+MOLECULES = [
+    "CCO",
+    "CC(=O)Oc1ccccc1C(=O)O",
+    "C/C=C/C(=O)N(C)C",
+    "C[C@H](N)C(=O)O",
+    "C[C@@]12CCCC[C@H]1CCCC2",
+    "O=[N+]([O-])c1ccccc1",
+]
 
 
 def sorted_rows(graph):
@@ -27,16 +34,23 @@ def test_atom_order_does_not_matter(smiles):
         assert sorted_rows(build_molecule_arrays(other)) == reference
 
 
-@pytest.mark.parametrize("smiles, mirror", [("C[C@H](N)C(=O)O", "C[C@@H](N)C(=O)O"),
-                                            ("O[C@H]1CCCC[C@H]1Cl", "O[C@@H]1CCCC[C@@H]1Cl")])
+@pytest.mark.parametrize(
+    "smiles, mirror", [("C[C@H](N)C(=O)O", "C[C@@H](N)C(=O)O"), ("O[C@H]1CCCC[C@H]1Cl", "O[C@@H]1CCCC[C@@H]1Cl")]
+)
 def test_enantiomers_look_the_same(smiles, mirror):
     assert sorted_rows(build_molecule_arrays(Chem.MolFromSmiles(smiles))) == sorted_rows(
         build_molecule_arrays(Chem.MolFromSmiles(mirror))
     )
 
 
-@pytest.mark.parametrize("one, other", [("C/C=C/C", "C/C=C\\C"), ("C[C@H]1CC[C@@H](C)CC1", "C[C@H]1CC[C@H](C)CC1"),
-                                        ("C[C@@]12CCCC[C@H]1CCCC2", "C[C@@]12CCCC[C@@H]1CCCC2")])
+@pytest.mark.parametrize(
+    "one, other",
+    [
+        ("C/C=C/C", "C/C=C\\C"),
+        ("C[C@H]1CC[C@@H](C)CC1", "C[C@H]1CC[C@H](C)CC1"),
+        ("C[C@@]12CCCC[C@H]1CCCC2", "C[C@@]12CCCC[C@@H]1CCCC2"),
+    ],
+)
 def test_diastereomers_look_different(one, other):
     assert sorted_rows(build_molecule_arrays(Chem.MolFromSmiles(one))) != sorted_rows(
         build_molecule_arrays(Chem.MolFromSmiles(other))

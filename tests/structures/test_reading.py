@@ -68,7 +68,9 @@ def test_molfile_keeps_the_order_of_atoms(tmp_path, v3000, ending):
     path = tmp_path / "some.mol"
     path.write_bytes(Chem.MolToMolBlock(mol, forceV3000=v3000).replace("\n", ending).encode())
     structure = parse_structure(path)
-    assert structure.smiles == "CCO" and structure.atom_numbers == (1, 2, 3) and structure.mol.GetAtomWithIdx(0).GetSymbol() == "O"
+    assert (
+        structure.smiles == "CCO" and structure.atom_numbers == (1, 2, 3) and structure.mol.GetAtomWithIdx(0).GetSymbol() == "O"
+    )
 
 
 def test_molfile_wedges_are_read(tmp_path):
@@ -100,11 +102,23 @@ def test_molfile_without_coordinates_is_read_and_noted(tmp_path):
     assert "no coordinates" in parse_structure(path).notes[0]
 
 
-@pytest.mark.parametrize("text, message", [
-    ("C(C)(C)(C)(C)C", "atom 1 \\(C\\) with 5 bonds"), ("c1cccc1", "Kekulé.*\\[nH\\]"), ("xyz", "not a SMILES"), ("", "no structure"),
-    ("*CC", "placeholder \\(atom 1"), ("[H][H]", "no heavy atom"), ("no_such_file.sdf", "no such file"), ("InChI=1S/x", "InChI"),
-    ("C" * 1001, "1,001 heavy atoms"), ("[R1]CC", "not a SMILES|placeholder"), ("C1CC", "not a SMILES"), ("CC(", "not a SMILES"),
-])
+@pytest.mark.parametrize(
+    "text, message",
+    [
+        ("C(C)(C)(C)(C)C", "atom 1 \\(C\\) with 5 bonds"),
+        ("c1cccc1", "Kekulé.*\\[nH\\]"),
+        ("xyz", "not a SMILES"),
+        ("", "no structure"),
+        ("*CC", "placeholder \\(atom 1"),
+        ("[H][H]", "no heavy atom"),
+        ("no_such_file.sdf", "no such file"),
+        ("InChI=1S/x", "InChI"),
+        ("C" * 1001, "1,001 heavy atoms"),
+        ("[R1]CC", "not a SMILES|placeholder"),
+        ("C1CC", "not a SMILES"),
+        ("CC(", "not a SMILES"),
+    ],
+)
 def test_what_cannot_be_read_is_said(text, message):
     with pytest.raises(StructureError, match=message) as caught:
         parse_structure(text)
@@ -126,8 +140,16 @@ def test_molfile_without_atoms(tmp_path):
         parse_structure(path)
 
 
-@pytest.mark.parametrize("smiles, note", [("CC(=O)[O-].[Na+]", "2 components"), ("C[Sn](C)(C)C", "metal"), ("[2H]C(Cl)(Cl)Cl", "deuterium"),
-                                          ("[13CH4]", "isotope"), ("C[CH2]", "radical")])
+@pytest.mark.parametrize(
+    "smiles, note",
+    [
+        ("CC(=O)[O-].[Na+]", "2 components"),
+        ("C[Sn](C)(C)C", "metal"),
+        ("[2H]C(Cl)(Cl)Cl", "deuterium"),
+        ("[13CH4]", "isotope"),
+        ("C[CH2]", "radical"),
+    ],
+)
 def test_notes(smiles, note):
     assert note in " ".join(parse_structure(smiles).notes)
 

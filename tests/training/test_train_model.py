@@ -20,7 +20,18 @@ def archive(tmp_path_factory, shipped_model):
     from shiftpred.structures import parse_structure
 
     tails = ["C", "CC", "CCC", "C(C)C", "CCCC", "CC(C)C", "C(C)(C)C", "c1ccccc1", "CO", "CCO", "CN", "CCl", "CBr", "CF", "C#N"]
-    heads = ["CC(=O)O{}", "CC(=O)N{}", "c1ccccc1{}", "OC{}", "NC{}", "Cc1ccc({})cc1", "O=C(O)C{}", "ClCC{}", "COC(=O)CC{}", "C1CCCCC1{}"]
+    heads = [
+        "CC(=O)O{}",
+        "CC(=O)N{}",
+        "c1ccccc1{}",
+        "OC{}",
+        "NC{}",
+        "Cc1ccc({})cc1",
+        "O=C(O)C{}",
+        "ClCC{}",
+        "COC(=O)CC{}",
+        "C1CCCCC1{}",
+    ]
     smiles = [h.format(t) for h in heads for t in tails]
     folder = tmp_path_factory.mktemp("archive")
     predictions = predict_structures([parse_structure(s) for s in smiles], model=shipped_model)
@@ -47,7 +58,9 @@ def test_alone(archive, tmp_path):
     from shiftpred.training.train_model import train_model
 
     said = []
-    result = train_model(archive, tmp_path / "mine", settings=settings(), processes=2, substituent_compounds=60, report=said.append)
+    result = train_model(
+        archive, tmp_path / "mine", settings=settings(), processes=2, substituent_compounds=60, report=said.append
+    )
     model = load_bundle(tmp_path / "mine")
     assert model.manifest["origin"]["compounds"]["train"] > 50 and result["after"]["13C_mean"] > 0
     rounds = [json.loads(line) for line in (tmp_path / "mine" / "rounds.jsonl").read_text().splitlines()]
@@ -73,7 +86,9 @@ def test_same_seed_gives_the_same_weights(archive, tmp_path):
     from shiftpred.training.train_environment_model import train_environment_model
 
     compounds = load_open_tables(archive)
-    both = [train_environment_model(compounds, settings(passes=2), tmp_path / k, processes=1, report=lambda _: None) for k in "ab"]
+    both = [
+        train_environment_model(compounds, settings(passes=2), tmp_path / k, processes=1, report=lambda _: None) for k in "ab"
+    ]
     for one, other in zip(both[0].parameters(), both[1].parameters()):
         assert torch.equal(one, other)
 
@@ -84,8 +99,15 @@ def test_on_top_of_the_shipped_model(archive, tmp_path, shipped_model):
     from shiftpred.training.train_model import train_model
 
     own = NetworkSettings(passes=2, first_passes=0, learning_rate=1e-5, low_precision=False)
-    result = train_model(archive, tmp_path / "mine", start_from=shipped_model.folder, settings=own, processes=1,
-                         substituent_compounds=60, report=lambda _: None)
+    result = train_model(
+        archive,
+        tmp_path / "mine",
+        start_from=shipped_model.folder,
+        settings=own,
+        processes=1,
+        substituent_compounds=60,
+        report=lambda _: None,
+    )
     assert result["before"]["13C_mean"] < 0.6 and result["after"]["13C_mean"] < 1.0
     assert np.isfinite(result["after"]["1H_mean"])
 

@@ -122,7 +122,9 @@ def test_folder_of_files(tmp_path):
     assert [s.name for s in samples] == ["one", "two"] and samples[0].c13.endswith("one_13C.txt") and samples[1].structure == ""
 
 
-@pytest.mark.parametrize("text, message", [("", "columns none"), ("a,b\n1,2\n", "columns a, b"), ("sample,smiles,c13\n", "without rows")])
+@pytest.mark.parametrize(
+    "text, message", [("", "columns none"), ("a,b\n1,2\n", "columns a, b"), ("sample,smiles,c13\n", "without rows")]
+)
 def test_tables_that_cannot_be_used(tmp_path, text, message):
     path = tmp_path / "t.csv"
     path.write_text(text)
@@ -138,7 +140,10 @@ def test_missing_table():
 def test_killed_run_goes_on(tmp_path):
     """A run that is killed leaves whole results only; the next one does the rest, and all rows are there once."""
     table = tmp_path / "t.csv"
-    lines = [f'{k},CC(=O)Oc1ccccc1C(=O)O,"170.2, 169.8, 151.3, 134.9, 132.5, 126.2, 124.0, 122.2, {20 + k / 100:.2f}"' for k in range(12)]
+    lines = [
+        f'{k},CC(=O)Oc1ccccc1C(=O)O,"170.2, 169.8, 151.3, 134.9, 132.5, 126.2, 124.0, 122.2, {20 + k / 100:.2f}"'
+        for k in range(12)
+    ]
     table.write_text("sample,smiles,c13\n" + "\n".join(lines) + "\n")
     folder = tmp_path / "out"
     code = f"from shiftpred.triage import run_triage; run_triage({str(table)!r}, {str(folder)!r}, processes=1, rivals=2, date='2025-01-31')"

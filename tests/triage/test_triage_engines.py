@@ -63,9 +63,22 @@ def test_dead_worker_process_costs_nothing(tmp_path):
 def test_cluster_with_a_killed_worker_gives_the_same_rows(tmp_path):
     pytest.importorskip("distributed")
     run_triage(QUEUE, tmp_path / "one", processes=1, rivals=2, date="2025-01-31")
-    scheduler = subprocess.Popen([sys.executable, "-m", "distributed.cli.dask_scheduler", "--host", "127.0.0.1", "--port", "0",
-                                  "--no-dashboard", "--scheduler-file", str(tmp_path / "where.json")],
-                                 stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL)
+    scheduler = subprocess.Popen(
+        [
+            sys.executable,
+            "-m",
+            "distributed.cli.dask_scheduler",
+            "--host",
+            "127.0.0.1",
+            "--port",
+            "0",
+            "--no-dashboard",
+            "--scheduler-file",
+            str(tmp_path / "where.json"),
+        ],
+        stdout=subprocess.DEVNULL,
+        stderr=subprocess.DEVNULL,
+    )
     workers = []
     try:
         deadline = time.time() + 60
@@ -76,10 +89,28 @@ def test_cluster_with_a_killed_worker_gives_the_same_rows(tmp_path):
         time.sleep(0.5)
         address = json.loads((tmp_path / "where.json").read_text())["address"]
         for _ in range(2):
-            workers.append(subprocess.Popen([sys.executable, "-m", "distributed.cli.dask_worker", address, "--nthreads", "1", "--no-nanny",
-                                             "--no-dashboard", "--local-directory", str(tmp_path)], stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL))
-        code = (f"from shiftpred.triage import run_triage; run_triage({str(QUEUE)!r}, {str(tmp_path / 'two')!r}, rivals=2, "
-                f"date='2025-01-31', scheduler={address!r})")
+            workers.append(
+                subprocess.Popen(
+                    [
+                        sys.executable,
+                        "-m",
+                        "distributed.cli.dask_worker",
+                        address,
+                        "--nthreads",
+                        "1",
+                        "--no-nanny",
+                        "--no-dashboard",
+                        "--local-directory",
+                        str(tmp_path),
+                    ],
+                    stdout=subprocess.DEVNULL,
+                    stderr=subprocess.DEVNULL,
+                )
+            )
+        code = (
+            f"from shiftpred.triage import run_triage; run_triage({str(QUEUE)!r}, {str(tmp_path / 'two')!r}, rivals=2, "
+            f"date='2025-01-31', scheduler={address!r})"
+        )
         run = subprocess.Popen([sys.executable, "-c", code])
         while len(list((tmp_path / "two" / "results").glob("*.json")) if (tmp_path / "two").exists() else []) < 2:
             time.sleep(0.05)
