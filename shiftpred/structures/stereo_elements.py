@@ -129,7 +129,7 @@ def _find_tetrahedral(table, rank, elements):
 
 
 def _is_bridgehead(table, i):
-    """Say whether a nitrogen is held from inverting by rings that share more than a bond (quinuclidine yes, indolizidine no)."""
+    """Say whether a nitrogen is held from inverting by bridged rings (quinuclidine yes, indolizidine no)."""
     if any(order != 1.0 for order in table.orders[i]):
         return False
     mol, info = table.mol, table.mol.GetRingInfo()
@@ -204,7 +204,7 @@ def _read_drawn(bond, begin, first, last):
 
 
 def _find_slow_rotors(table, rank, elements):
-    """Amides, thioamides, carbamates and nitrosamines with two ligands of equal constitution on nitrogen; ureas turn quickly."""
+    """Find amides, thioamides, carbamates and nitrosamines with two ligands of equal constitution on nitrogen."""
     for i, z in enumerate(table.elements):
         if z != 7 or len(table.neighbours[i]) != 3 or table.aromatic[i]:
             continue
