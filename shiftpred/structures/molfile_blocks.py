@@ -64,8 +64,9 @@ def parse_blocks(lines: Iterable[str], where: str) -> Iterator[Structure | Recor
 
 def _parse_block(lines: list[str], length: int, number: int, where: str) -> Structure | RecordFailure:
     place = f"{where}, record {number}"
-    title = lines[0].strip() if lines and not is_counts_line(lines[0]) else ""
-    name = title or str(number)
+    # In a header that lacks lines the first need not be the title.
+    has_title = not any(is_counts_line(line) for line in lines[:_HEADER_LINES])
+    name = (lines[0].strip() if lines and has_title else "") or str(number)
 
     def build():
         if length > _LONGEST_RECORD:
@@ -110,7 +111,7 @@ def _cut_connection_table(lines, place):
             )
         end = next((k for k, line in enumerate(lines) if line.startswith("> ")), len(lines)) - 1
     header = (lines[:counts] + [""] * _HEADER_LINES)[:_HEADER_LINES]
-    return header + lines[counts : end + 1], notes
+    return [*header, *lines[counts : end + 1], *([] if lines[end].startswith("M  END") else ["M  END"])], notes
 
 
 def _read_stereo(mol, conformer) -> None:

@@ -170,6 +170,8 @@ def _parse_text(text: str, where: str, number: str) -> Iterator[Structure | Reco
     elif _is_file(stripped):
         yield from _parse_file(Path(stripped))
     elif _looks_like_path(stripped):
+        if os.path.isdir(stripped):
+            raise InputError(quote(stripped), "a folder", "a SMILES, or the path of a file", "name one file in it")
         raise StructureError(
             quote(stripped),
             "a file name, but there is no such file",
@@ -263,7 +265,7 @@ def _parse_lines_of_any_kind(lines: Iterable[str], where: str) -> Iterator[Struc
     head = list(islice(lines, _LINES_LOOKED_AT))
     everything = chain(head, lines)
     first = next((line for line in head if line.strip()), "").lower().replace('"', "")
-    if any(is_counts_line(line) or line.startswith("M  END") for line in head):
+    if any(is_counts_line(line) or line.startswith(("M  END", "$RXN", "$RDFILE")) for line in head):
         yield from parse_blocks(everything, where)
     elif any("smiles" in [cell.strip() for cell in first.split(mark)] for mark in ",;\t") and len(first.split()) == 1:
         yield from _parse_table(everything, where, None)
@@ -304,17 +306,19 @@ def _parse_table(lines: Iterable[str], where: str, delimiter: str | None) -> Ite
     at = header.index("smiles")
     name_at = next((header.index(column) for column in _NAME_COLUMNS if column in header), None)
     number = 0
-    rows = csv.reader(lines, delimiter=delimiter)
+    # Strict, because a quotation mark that is never closed would swallow the rows behind it without a word.
+    rows = csv.reader(lines, delimiter=delimiter, strict=True)
     while True:
         try:
             row = next(rows, None)
         except csv.Error as error:
-            raise InputError(
-                f"{where}, row {number + 1}",
-                f"a row that cannot be read ({error})",
-                "quoted cells that end",
-                "check the quotation marks",
-            ) from None
+            number += 1
+            place = f"{where}, row {number} (line {rows.line_num + 1})"
+            reason = f"a row that cannot be read ({error})"
+            yield RecordFailure(
+                str(number), StructureError(place, reason, "quotation marks in pairs", "check the quotation marks from here on")
+            )
+            continue
         if row is None:
             break
         if not any(cell.strip() for cell in row):

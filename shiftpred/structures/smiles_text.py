@@ -74,6 +74,8 @@ def parse_line(line: str, name: str, where: str) -> Structure | RecordFailure:
             raise StructureError(where, "no structure", "a SMILES", "fill in the structure")
         if len(text) > _LONGEST_LINE:
             raise StructureError(where, f"{len(text):,} characters", f"at most {_LONGEST_LINE:,}", "give one molecule")
+        if "\x00" in text:
+            raise StructureError(where, f"{quote(text)}, with a null character", "a SMILES", "look whether the file is text")
         if text.startswith("InChI="):
             return build_structure(_read_inchi(text, where), label, where, text)
         mol, is_sanitised = _read_smiles(text, where)
@@ -118,15 +120,14 @@ def _name_fault(text: str, where: str) -> StructureError:
             where, f"{quote(text)}, an InChIKey", expected, "an InChIKey holds no structure: give the SMILES or InChI"
         )
     fault = _find_fault(text)
-    if fault:
-        return StructureError(
-            where,
-            f"{quote(text)}, which is not a SMILES: {fault}",
-            expected,
-            "correct it; names and formulas are not looked up",
-        )
+    advice = "correct it" if fault else "check brackets, ring numbers and element symbols"
+    aside = (
+        "if a file is meant, there is none of this name"
+        if "/" in text or "." in text
+        else "names and formulas are not looked up"
+    )
     return StructureError(
-        where, f"{quote(text)}, which is not a SMILES", expected, "check brackets, ring numbers and element symbols"
+        where, f"{quote(text)}, which is not a SMILES{': ' if fault else ''}{fault}", expected, f"{advice}; {aside}"
     )
 
 
@@ -167,6 +168,8 @@ def _find_fault(text: str) -> str:
     if open_rings:
         number, at = next(iter(open_rings.items()))
         return f"ring {number} at character {at + 1} is not closed"
+    if text[-1] in ".-=#$:/\\~":
+        return f"{quote(text[-1])} at its end, with no atom behind"
     return ""
 
 
