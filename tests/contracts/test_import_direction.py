@@ -23,6 +23,7 @@ ORDER = [
     "pipeline",
     "reporting",
     "triage",
+    "web",
     "training",
     "cli",
 ]
