@@ -40,7 +40,7 @@ class Equivalence:
     """(n_atoms,) bool: the atom's two hydrogens are diastereotopic."""
 
 
-def compute_equivalence(mol: Chem.Mol, table: AtomTable | None = None) -> Equivalence:
+def compute_equivalence(mol: Chem.Mol, table: AtomTable | None = None, deuterium: tuple[int, ...] = ()) -> Equivalence:
     """Apply the substitution test to all atoms and to the hydrogens of all CH2.
 
     Parameters
@@ -49,6 +49,8 @@ def compute_equivalence(mol: Chem.Mol, table: AtomTable | None = None) -> Equiva
         Standardised; one or several components, each of which is turned and reflected on its own.
     table : AtomTable, optional
         Of the same molecule, where it is at hand.
+    deuterium : tuple of int, optional
+        (n_atoms,) deuterium atoms on each atom; they tell atoms apart (the two carbons of CH3-S(O)-CD3).
 
     Returns
     -------
@@ -58,8 +60,9 @@ def compute_equivalence(mol: Chem.Mol, table: AtomTable | None = None) -> Equiva
     -----
     A centre without drawn configuration counts as a centre. Atoms that are exchanged with it are called equivalent if they are
     so in one of the stereoisomers; hydrogens of a CH2 are called different if they are so in one of them. Two stated choices
-    on the time scale at room temperature: the two groups on nitrogen of an amide, thioamide, carbamate or nitrosamine differ,
-    those of a urea do not; the two hydrogens of a primary amide differ, those of a urea or carbamate do not.
+    on the time scale at room temperature: the two groups on nitrogen of an amide, thioamide, nitrosamine or open-chain carbamate
+    differ, those of a urea, sulfonamide or Boc-piperidine do not (counted on measured spectra, see `stereo_elements`); the two
+    hydrogens of a primary amide differ, those of a urea or carbamate do not.
 
     Examples
     --------
@@ -69,7 +72,7 @@ def compute_equivalence(mol: Chem.Mol, table: AtomTable | None = None) -> Equiva
     (True, False)
     """
     table = table or build_atom_table(mol)
-    rank = _compute_constitutional_rank(mol, table)
+    rank = _compute_constitutional_rank(mol, table, deuterium)
     elements = find_stereo_elements(table, rank)
     found = _Groups(table, rank, elements)
     return Equivalence(
@@ -77,28 +80,30 @@ def compute_equivalence(mol: Chem.Mol, table: AtomTable | None = None) -> Equiva
     )
 
 
-def _compute_constitutional_rank(mol, table) -> list[int]:
+def _compute_constitutional_rank(mol, table, deuterium=()) -> list[int]:
     """Rank atoms without stereo; resonance forms (carboxylate, imidazolium, nitro) do not tell atoms apart.
 
     Two placements of the same double bonds and charges on one skeleton with the same hydrogens are resonance forms, so
     where there are charges the skeleton alone is ranked.
     """
-    if any(a.GetFormalCharge() for a in table.atoms):
-        skeleton = Chem.RWMol(mol)
-        hydrogens = table.hydrogens
-        for atom in skeleton.GetAtoms():
+    charged = any(a.GetFormalCharge() for a in table.atoms)
+    if not charged and not any(deuterium):
+        return list(Chem.CanonicalRankAtoms(mol, breakTies=False, includeChirality=False, includeIsotopes=False))
+    work = Chem.RWMol(mol)
+    # Isotope numbers carry what ranking would not look at otherwise: hydrogens of the bare skeleton, and deuterium.
+    for atom, hydrogens, heavy in zip(work.GetAtoms(), table.hydrogens, deuterium or [0] * len(table.hydrogens)):
+        atom.SetIsotope(1 + hydrogens + 10 * heavy)
+        if charged:
             atom.SetIsAromatic(False)
             atom.SetFormalCharge(0)
             atom.SetNoImplicit(True)
-            # Isotope numbers carry the hydrogen counts, because ranking looks at those only through the valence.
             atom.SetNumExplicitHs(0)
-            atom.SetIsotope(1 + hydrogens[atom.GetIdx()])
-        for bond in skeleton.GetBonds():
+    if charged:
+        for bond in work.GetBonds():
             bond.SetBondType(_SINGLE)
             bond.SetIsAromatic(False)
-        skeleton.UpdatePropertyCache(strict=False)
-        return list(Chem.CanonicalRankAtoms(skeleton, breakTies=False, includeChirality=False, includeIsotopes=True))
-    return list(Chem.CanonicalRankAtoms(mol, breakTies=False, includeChirality=False, includeIsotopes=False))
+        work.UpdatePropertyCache(strict=False)
+    return list(Chem.CanonicalRankAtoms(work, breakTies=False, includeChirality=False, includeIsotopes=True))
 
 
 class _Groups:

@@ -26,7 +26,7 @@ def compute_sites(structure: Structure) -> tuple[Site, ...]:
     """
     table = build_atom_table(structure.mol)
     environments = compute_site_environments(structure.mol, table)
-    equivalence = compute_equivalence(structure.mol, table)
+    equivalence = compute_equivalence(structure.mol, table, structure.deuterium)
     groups, ranks = equivalence.group.tolist(), equivalence.constitutional.tolist()
     differ = equivalence.geminal_differ.tolist()
     members: dict[int, list[int]] = {}

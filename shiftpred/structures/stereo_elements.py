@@ -27,7 +27,8 @@ _TETRAHEDRAL = frozenset((5, 6, 7, 14, 15, 16, 32, 33, 34, 50, 52))
 _PYRAMIDAL = frozenset((15, 16, 33, 34, 52))
 _CHALCOGENS = frozenset((8, 16, 34))
 _SMALLEST_RING_WITH_E_AND_Z = 8
-_LONE_PAIR = -1
+_LARGEST_RIGID_RING = 7
+_LARGEST_CIS_FUSED_RING = 4
 
 
 @dataclass(slots=True)
@@ -93,6 +94,7 @@ def find_stereo_elements(table: AtomTable, rank: list[int]) -> StereoElements:
     """
     elements = StereoElements()
     _find_tetrahedral(table, rank, elements)
+    _relate_bridgeheads(table, rank, elements)
     _find_double_bonds(table, elements)
     _find_slow_rotors(table, rank, elements)
     for k, element in enumerate(elements.planar):
@@ -137,6 +139,47 @@ def _is_bridgehead(table, i):
         return False
     own = [set(ring) for ring in info.AtomRings() if i in ring]
     return any(len(one & other) > 2 for k, one in enumerate(own) for other in own[:k])
+
+
+def _relate_bridgeheads(table, rank, elements):
+    """Give two bridgeheads without drawn configuration the one that the bridges force on them.
+
+    In a small bicycle both point outwards (norbornane), or to one side (fused three- and four-membered rings): each is the
+    mirror image of the other along the bridges.
+    """
+    tetrahedral = elements.tetrahedral
+    undrawn: dict[int, list[int]] = {}
+    for i, drawn in tetrahedral.items():
+        if not drawn and len(table.neighbours[i]) > 2:
+            undrawn.setdefault(rank[i], []).append(i)
+    pairs = [(u, v) for atoms in undrawn.values() if len(atoms) > 1 for k, v in enumerate(atoms) for u in atoms[:k]]
+    if not pairs:
+        return
+    rings = table.mol.GetRingInfo().AtomRings()
+    for u, v in pairs:
+        shared = [ring for ring in rings if u in ring and v in ring]
+        if tetrahedral[u] and tetrahedral[v] or len(shared) < 2 or max(map(len, shared)) > _LARGEST_RIGID_RING:
+            continue
+        if v in table.neighbours[u] and min(map(len, shared)) > _LARGEST_CIS_FUSED_RING:
+            continue
+        other: dict[int, int] = {}
+        for ring in shared:
+            start = ring.index(u)
+            round_u = ring[start:] + ring[:start]
+            stop = round_u.index(v)
+            # Along each way round the ring: the neighbour of u, and the neighbour of v on the same bridge.
+            other[round_u[1]] = round_u[stop - 1]
+            other[round_u[-1]] = round_u[(stop + 1) % len(round_u)]
+        goal = [other.get(a, -1) for a in table.neighbours[u]]
+        rest = [b for b in table.neighbours[v] if b not in goal]
+        if goal.count(-1) != len(rest) or len(rest) > 1:
+            continue
+        goal = [rest[0] if b < 0 else b for b in goal]
+        if sorted(goal) != sorted(table.neighbours[v]):
+            continue
+        parity = compute_parity(goal, table.neighbours[v])
+        tetrahedral[u] = tetrahedral[u] or -parity * (tetrahedral[v] or 1)
+        tetrahedral[v] = -parity * tetrahedral[u]
 
 
 def _has_exchanging_oxygens(table, i):
@@ -204,13 +247,20 @@ def _read_drawn(bond, begin, first, last):
 
 
 def _find_slow_rotors(table, rank, elements):
-    """Find amides, thioamides, carbamates and nitrosamines with two ligands of equal constitution on nitrogen."""
+    """Find nitrogens with two ligands of equal constitution that do not exchange quickly.
+
+    Which do was counted in the complete 13C lists of the open shift table (lists with more lines than the exchanged groups
+    would give / all lists): formamides 12/12, other amides 65/78, amides of ring nitrogen 19/27, thioamides 10/12,
+    dithiocarbamates 5/5, nitrosamines 6/7, open-chain carbamates 10/14; but carbamates of ring nitrogen 1/14, ureas 0/9,
+    thioureas 1/6, sulfonamides 0/17, amidines 1/11, enaminones 17/45.
+    """
+    ring = table.mol.GetRingInfo()
     for i, z in enumerate(table.elements):
         if z != 7 or len(table.neighbours[i]) != 3 or table.aromatic[i]:
             continue
         for j in table.neighbours[i]:
             held = [k for k in table.neighbours[i] if k != j]
-            if rank[held[0]] == rank[held[1]] and holds_nitrogen_planar(table, j):
+            if rank[held[0]] == rank[held[1]] and holds_nitrogen_planar(table, j, carbamates=not ring.NumAtomRings(i)):
                 others = [k for k in table.neighbours[j] if k != i]
                 elements.planar.append(PlanarElement((i, j), (held, others), False, (), 0))
 
@@ -218,7 +268,8 @@ def _find_slow_rotors(table, rank, elements):
 def holds_nitrogen_planar(table: AtomTable, i: int, carbamates: bool = True) -> bool:
     """Say whether a single bond from nitrogen to atom `i` turns slowly at room temperature.
 
-    C=O and C=S do so unless a second nitrogen shares in (ureas); N=O of nitrosamines does.
+    C=O and C=S do so unless a second nitrogen shares in (ureas), or, where `carbamates` is False, an oxygen; so does N=O of
+    nitrosamines.
     """
     partner = table.find_double_bond_partner(i)
     if partner < 0 or table.elements[partner] not in _CHALCOGENS or table.aromatic[i]:
@@ -226,4 +277,6 @@ def holds_nitrogen_planar(table: AtomTable, i: int, carbamates: bool = True) -> 
     if table.elements[i] == 7:
         return len(table.neighbours[i]) == 2
     single = [table.elements[k] for k in table.neighbours[i] if k != partner]
-    return table.elements[i] == 6 and single.count(7) == 1 and (carbamates or not any(z in _CHALCOGENS for z in single))
+    if table.elements[i] != 6 or single.count(7) != 1:
+        return False
+    return carbamates or 8 not in single
