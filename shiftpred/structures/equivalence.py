@@ -245,7 +245,7 @@ class _Groups:
         if reflection is None:
             return False
         if all(reflection.get(k, k) == k for k in (i, *near)) and not any(
-            u != v and u in self.elements.true_centres and not self.elements.tetrahedral[u] for u, v in reflection.items()
+            u != v and u in self.elements.open_centres for u, v in reflection.items()
         ):
             return True
         return self.search.find(((i, i), *((k, k) for k in near)), -1, strict=True) is not None

@@ -1,9 +1,9 @@
 """Stereo elements: what a symmetry operation of a molecule has to keep, or to invert, besides the bonds.
 
-Three kinds. A tetrahedral atom with four different places (a lone pair of S, P, As, Se, Te counts as one; of N only at a
-bridgehead, because all others invert) and an even cumulene have a handedness: a rotation keeps it and a reflection inverts
-it. A planar element (double bond, odd cumulene, the slowly rotating C-N bond of an amide, thioamide, carbamate or nitrosamine)
-is kept by both. An atom with two or more hydrogens is no element: its hydrogens can always be numbered to suit.
+Three kinds. A tetrahedral atom with four different places has a handedness, and so has an even cumulene: a rotation keeps it
+and a reflection inverts it. (A lone pair of S, P, As, Se or Te counts as a place; one of N only at a bridgehead or where it is
+drawn so, because other amines invert.) A planar element (double bond, odd cumulene, the slowly rotating C-N bond of an amide
+and its relatives) is kept by both. An atom with two or more hydrogens is no element: its hydrogens can be numbered to suit.
 """
 
 from __future__ import annotations
@@ -51,12 +51,14 @@ class StereoElements:
     """All stereo elements of a molecule."""
 
     tetrahedral: dict[int, int] = field(default_factory=dict)
-    """Atom → drawn configuration: +1, -1, or 0 where none is drawn."""
+    """Atom → configuration: +1, -1, or 0 where none is drawn (yet to be settled)."""
     planar: list[PlanarElement] = field(default_factory=list)
     at_atom: dict[int, list[int]] = field(default_factory=dict)
     """Atom → places in `planar` of which it is an end."""
     true_centres: set[int] = field(default_factory=set)
     """Tetrahedral atoms whose ligands all differ by constitution."""
+    open_centres: set[int] = field(default_factory=set)
+    """Those of `true_centres` whose configuration is neither drawn nor forced by a bridge."""
 
 
 def compute_parity(given: list[int], wanted: list[int]) -> int:
@@ -95,6 +97,7 @@ def find_stereo_elements(table: AtomTable, rank: list[int]) -> StereoElements:
     elements = StereoElements()
     _find_tetrahedral(table, rank, elements)
     _relate_bridgeheads(table, rank, elements)
+    elements.open_centres = {i for i in elements.true_centres if not elements.tetrahedral[i]}
     _find_double_bonds(table, elements)
     _find_slow_rotors(table, rank, elements)
     for k, element in enumerate(elements.planar):
@@ -111,7 +114,7 @@ def _find_tetrahedral(table, rank, elements):
             continue
         if table.degrees[i] == 3:
             if z == 7:
-                if not _is_bridgehead(table, i):
+                if not table.atoms[i].GetChiralTag() and not _is_bridgehead(table, i):
                     continue
             elif z not in _PYRAMIDAL or 2.0 in table.orders[i] and z != 16 and z != 34:
                 continue

@@ -6,7 +6,8 @@ single bonds, ring inversion and inversion at nitrogen are taken for granted, as
 temperature. Atoms that such an operation carries onto one another are homotopic (+1) or enantiotopic (-1).
 
 A stereo element whose configuration is not drawn may have either: an operation that exchanges it with another one is
-admitted if some choice of configurations allows it (2,3-butanediol, meso or not), unless the search is strict.
+admitted if some choice of configurations allows it (2,3-butanediol, meso or not), and settles that choice for the searches
+after it. A strict search neither exchanges true centres that are not drawn nor settles anything.
 """
 
 from __future__ import annotations
@@ -47,7 +48,7 @@ class SymmetrySearch:
         sign : {1, -1}
             Rotation or reflection.
         strict : bool
-            True: true centres without drawn configuration may not be exchanged.
+            True: true centres without drawn configuration may not be exchanged, and nothing is settled.
 
         Returns
         -------
@@ -62,7 +63,7 @@ class SymmetrySearch:
         self.moved_at = self.fixed_at = 0
         self.done: list[int] = []
         self.is_done: set[int] = set()
-        self.deferred: list[tuple[object, object, int, int]] = []
+        self.deferred: list[tuple[tuple[str, int], tuple[str, int], int]] = []
         self.checked = 0
         self.steps = 0
         for u, v in start:
@@ -179,13 +180,13 @@ class SymmetrySearch:
         if v not in tetrahedral:
             return True
         parity = compute_parity([self.image[w] for w in self.neighbours[u]], self.neighbours[v])
+        if self.strict and u != v and u in self.elements.open_centres:
+            return False
         if tetrahedral[u] and tetrahedral[v]:
             return parity * tetrahedral[u] * tetrahedral[v] == self.sign
         if u == v:
             return parity == self.sign
-        if self.strict and u in self.elements.true_centres:
-            return False
-        self.deferred.append((u, v, parity, self.sign))
+        self.deferred.append((("tetrahedral", u), ("tetrahedral", v), parity * self.sign))
         return True
 
     def _check_planar(self, k):
@@ -214,20 +215,43 @@ class SymmetrySearch:
             return parity == wanted
         if self.strict:
             return False
-        self.deferred.append((("planar", k), ("planar", other), parity, wanted))
+        self.deferred.append((("planar", k), ("planar", other), parity * wanted))
         return True
 
     def _close_cycles(self):
-        """Check elements without drawn configuration that are exchanged with one another."""
-        step = {u: (v, parity * wanted) for u, v, parity, wanted in self.deferred}
-        while step:
-            first, (at, total) = step.popitem()
+        """Settle elements without drawn configuration that are exchanged with others; False if no choice fits."""
+        step = {source: (goal, factor) for source, goal, factor in self.deferred}
+        goals = {goal for goal, _ in step.values()}
+        choice: dict[tuple[str, int], int] = {}
+        # Open chains (onto another component) from their first element, then closed ones from any.
+        for start in sorted(step, key=lambda element: element in goals):
+            if start in choice:
+                continue
+            chain, at, total = {start: 1}, start, 1
             while at in step:
-                at, factor = step.pop(at)
+                at, factor = step[at]
                 total *= factor
-            if at == first and total != 1:
+                if at in chain:
+                    break
+                chain[at] = total
+            if at == start and total != 1:
                 return False
+            known = {self._read(element) * factor for element, factor in chain.items()} - {0}
+            if len(known) > 1:
+                return False
+            first = known.pop() if known else 1
+            choice.update((element, first * factor) for element, factor in chain.items())
+        if not self.strict:
+            for (kind, place), configuration in choice.items():
+                if kind == "planar":
+                    self.elements.planar[place].drawn = configuration
+                else:
+                    self.elements.tetrahedral[place] = configuration
         return True
+
+    def _read(self, element):
+        kind, place = element
+        return self.elements.planar[place].drawn if kind == "planar" else self.elements.tetrahedral[place]
 
     def _mark(self):
         return (
