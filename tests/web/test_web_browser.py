@@ -142,10 +142,45 @@ def test_files_to_keep(page, tmp_path):
         assert content in (tmp_path / "kept").read_text(encoding="utf-8")
 
 
+def test_picture_as_png(page, tmp_path):
+    fill_in(page)
+    with page.expect_download() as waited:
+        page.click("#save-structure-png")
+    waited.value.save_as(tmp_path / "kept.png")
+    assert (tmp_path / "kept.png").read_bytes()[:8] == b"\x89PNG\r\n\x1a\n"
+
+
+def test_by_keyboard_alone(page):
+    page.locator("#clear").focus()
+    page.keyboard.press("Tab")
+    page.keyboard.type("CCO")
+    for _ in range(3):
+        page.keyboard.press("Tab")
+    assert page.evaluate("document.activeElement.id") == "c13"
+    page.keyboard.type("58.0, 18.2")
+    page.wait_for_selector("#judgement .verdict")
+    for _ in range(40):
+        page.keyboard.press("Tab")
+        if page.evaluate("document.activeElement.closest('#assignment-tables') !== null"):
+            break
+    page.wait_for_selector("#structure-picture .site.lit")
+    page.keyboard.press("Enter")
+    page.wait_for_selector("#why-body svg")
+
+
+def test_very_long_paste_is_refused_in_words(page):
+    page.evaluate(
+        "() => { const box = document.querySelector('#c13'); box.value = '12.5, '.repeat(900000); "
+        "box.dispatchEvent(new Event('input', {bubbles: true})); }"
+    )
+    page.wait_for_selector("#c13-said:has-text('at most 200,000')")
+
+
 def test_dropped_file_is_read(page):
     page.evaluate(
         """() => { const t = new DataTransfer(); t.items.add(new File(["CCO ethanol"], "x.smi"));
-        document.querySelector('#structure-card').dispatchEvent(new DragEvent('drop', {dataTransfer: t, bubbles: true, cancelable: true})); }"""
+        const drop = new DragEvent('drop', {dataTransfer: t, bubbles: true, cancelable: true});
+        document.querySelector('#structure-card').dispatchEvent(drop); }"""
     )
     page.wait_for_selector("#structure-said:has-text('C2H6O')")
 

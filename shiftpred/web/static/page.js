@@ -7,6 +7,8 @@ const EXAMPLE = { ...BLANK, structure: "CCOC(=O)c1ccccc1", solvent: "CDCl3",
   h1: "1H NMR (400 MHz, CDCl3) δ 8.04 (m, 2H), 7.55 (m, 1H), 7.43 (m, 2H), 4.38 (q, J = 7.1 Hz, 2H), 1.39 (t, J = 7.1 Hz, 3H)" };
 const SIGN = { supported: "●", open: "◐", contradicted: "◆" };
 const KEY = "shiftpred-input";
+const NUMBERS = new Set(["Predicted", "Interval", "Observed", "Deviation", "Certain"]);
+const LONGEST = 200000; // characters of one field; the server refuses more
 let past = [], future = [], current = { ...BLANK }, last = null, shown = "13C", timer = 0, running = null, whyAsked = null;
 
 // ---- small tools
@@ -41,12 +43,24 @@ function save(name, text, kind) {
   make("a", { href: address, download: name }).click();
   setTimeout(() => URL.revokeObjectURL(address), 10000);
 }
+async function savePng(name, svg) {
+  const image = new Image(), address = URL.createObjectURL(new Blob([svg], { type: "image/svg+xml" }));
+  image.src = address; await image.decode();
+  const sheet = make("canvas", { width: image.naturalWidth * 3, height: image.naturalHeight * 3 }), pen = sheet.getContext("2d");
+  pen.fillStyle = "#ffffff"; pen.fillRect(0, 0, sheet.width, sheet.height); pen.drawImage(image, 0, 0, sheet.width, sheet.height);
+  URL.revokeObjectURL(address);
+  sheet.toBlob((blob) => save(name, blob, "image/png"), "image/png");
+}
 const format = (value, nucleus) => (value === null || value === undefined ? "" : value.toFixed(nucleus === "13C" ? 1 : 2));
 function formatProbability(p) { return p === null ? "" : p > 0.999 ? "> 0.999" : p < 0.001 ? "< 0.001" : p.toFixed(3); }
 function buildFault(error) {
   const parts = error.parts;
   if (!parts) return make("p", { class: "fault" }, error.message);
   return make("p", { class: "fault" }, make("strong", {}, `${parts.where}: `), `got ${parts.came}; expected ${parts.would_do}. Try: ${parts.try_next}`);
+}
+
+function buildLengthFault(text) {
+  return make("p", { class: "fault" }, `${text.length.toLocaleString("en")} characters; expected at most ${LONGEST.toLocaleString("en")}. Try: one structure, and the picked peaks of one spectrum.`);
 }
 
 // ---- input, its past, its places to stay
@@ -61,7 +75,7 @@ function writeInput(input) {
 }
 function remember(input) {
   if (JSON.stringify(input) === JSON.stringify(current)) return false;
-  past.push(current); past = past.slice(-200); future = []; current = input;
+  past.push(current); past = past.slice(-100); future = []; current = input;
   return true;
 }
 function keepInput() {
@@ -110,6 +124,7 @@ async function answer() {
     const checks = [["c13", "13C"], ["h1", "1H"]].map(async ([field, nucleus]) => { fine[field] = await checkPeaks(field, nucleus, input[field], mine.signal); });
     await Promise.all(checks);
     if (!input.structure.trim()) { $("structure-said").textContent = ""; showNothing(); return; }
+    if (input.structure.length > LONGEST) { $("structure-said").replaceChildren(buildLengthFault(input.structure)); showNothing(); return; }
     const asked = buildQuestion(input);
     if (!fine.c13) asked.c13 = ""; if (!fine.h1) asked.h1 = "";
     if (asked.c13.trim() || asked.h1.trim()) {
@@ -132,6 +147,7 @@ async function checkPeaks(field, nucleus, text, signal) {
   const place = $(`${field}-said`), box = $(field);
   box.removeAttribute("aria-invalid");
   if (!text.trim()) { place.replaceChildren(); return true; }
+  if (text.length > LONGEST) { box.setAttribute("aria-invalid", "true"); place.replaceChildren(buildLengthFault(text)); return false; }
   let found;
   try { found = await ask("peaks", { nucleus, text }, signal); } catch (error) {
     if (error.name === "AbortError") throw error;
@@ -169,7 +185,7 @@ function show() {
   const { document: d, compared } = last;
   for (const id of ["judgement", "lanes", "leftovers", "rivals-card"]) $(id).hidden = !compared;
   for (const id of ["picture", "assignment", "keep"]) $(id).hidden = false;
-  for (const id of ["save-html", "save-csv", "save-lanes"]) $(id).hidden = !compared;
+  for (const id of ["save-html", "save-csv", "save-lanes", "save-lanes-png"]) $(id).hidden = !compared;
   $("assignment-heading").textContent = compared ? "Assignment" : "Predicted shifts";
   showStructure(); showTables();
   if (compared) { showJudgement(d); showLanes(); showLeftovers(d); showRivals(d); }
@@ -222,7 +238,7 @@ function showTables() {
       last.compared ? d.missing.find((m) => m.nucleus === nucleus && `${m.equivalent_atoms}|${m.hydrogen}` === key) : null));
     const heads = ["Atom", "Group", "Predicted", "Interval", ...(last.compared ? ["Observed", "Deviation", "Certain", "Remarks"] : ["Remarks"])];
     parts.push(make("h3", {}, `${nucleus}, ppm`), make("div", { class: "scroll" }, make("table", { class: "stack", "aria-label": `${nucleus} sites` },
-      make("thead", {}, make("tr", {}, ...heads.map((h) => make("th", { scope: "col" }, h)))), make("tbody", {}, ...rows))));
+      make("thead", {}, make("tr", {}, ...heads.map((h) => make("th", { scope: "col", class: NUMBERS.has(h) ? "number" : null }, h)))), make("tbody", {}, ...rows))));
   }
   $("assignment-tables").replaceChildren(...parts);
 }
@@ -260,10 +276,11 @@ function showLeftovers(d) {
     : make("p", { class: "hint" }, "None: every line has a place."));
 }
 function showRivals(d) {
-  $("rivals-body").replaceChildren(d.rivals.length
-    ? buildTable("Rivals", ["SMILES", "How", "Probability", "Decided by", "Change over"], d.rivals.map((r) => [r.smiles, r.how, formatProbability(r.probability), r.decided_by,
-      make("button", { type: "button", "aria-label": `Propose ${r.smiles} instead`, onclick: () => setInput({ ...readInput(), structure: r.smiles }) }, "Propose")]))
-    : make("p", { class: "hint" }, "None was tried."));
+  const build = (label, rivals) => buildTable(label, ["SMILES", "How", "Probability", "Decided by", "Change over"], rivals.map((r) => [r.smiles, r.how, formatProbability(r.probability), r.decided_by,
+      make("button", { type: "button", "aria-label": `Propose ${r.smiles} instead`, onclick: () => setInput({ ...readInput(), structure: r.smiles }) }, "Propose")]));
+  const far = d.rivals.slice(3);
+  $("rivals-body").replaceChildren(d.rivals.length ? build("Nearest rivals", d.rivals.slice(0, 3)) : make("p", { class: "hint" }, "None was tried."),
+    far.length ? make("details", {}, make("summary", {}, `${far.length} more that fit less well`), build("Further rivals", far)) : "");
 }
 async function explain(atom, nucleus, isAsked) {
   if (!last) return;
@@ -347,6 +364,8 @@ $("save-csv").addEventListener("click", () => saveReport("csv", "shiftpred-shift
 $("save-json").addEventListener("click", () => save("shiftpred.json", JSON.stringify(last.document, null, 1), "application/json"));
 $("save-structure").addEventListener("click", () => save("shiftpred-structure.svg", last.pictures.structure[shown], "image/svg+xml"));
 $("save-lanes").addEventListener("click", () => { for (const [n, svg] of Object.entries(last.pictures.lanes)) save(`shiftpred-lane-${n}.svg`, svg, "image/svg+xml"); });
+$("save-structure-png").addEventListener("click", () => savePng("shiftpred-structure.png", last.pictures.structure[shown]));
+$("save-lanes-png").addEventListener("click", async () => { for (const [n, svg] of Object.entries(last.pictures.lanes)) await savePng(`shiftpred-lane-${n}.png`, svg); });
 window.addEventListener("hashchange", () => { const found = location.hash.startsWith("#i=") ? decode(location.hash.slice(3)) : null; if (found) setInput(found); });
 current = { ...BLANK, ...loadInput() };
 writeInput(current); keepInput(); answer();
