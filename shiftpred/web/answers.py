@@ -77,6 +77,8 @@ def answer_compare(asked: dict) -> dict:
 
     comparison = _compare(asked)
     document = compute_comparison_dict(comparison, asked.get("sample", ""))
+    if not asked.get("pictures", True):
+        return {"comparison": document, "pictures": {"structure": {}, "lanes": {}}}
     nuclei = comparison.prediction.nuclei
     marks = _collect_marks(document)
     structure = {

@@ -73,6 +73,10 @@ def create_app(workers=None, hosts: tuple[str, ...] = LOCAL_HOSTS) -> FastAPI:
     async def page():
         return FileResponse(f"{static}/page.html", media_type="text/html; charset=utf-8")
 
+    @app.get("/triage", include_in_schema=False)
+    async def triage_page():
+        return FileResponse(f"{static}/triage.html", media_type="text/html; charset=utf-8")
+
     app.mount("/static", StaticFiles(directory=static), name="static")
     return app
 

@@ -101,6 +101,7 @@ class CompareRequest(_Compared):
     rivals: int = Field(default=9, ge=0, le=50, description="Most rivals to try.")
     mass_confirmed: bool = Field(default=False, description="The mass is known to be right: only isomers are rivals.")
     width: int = Field(default=760, ge=300, le=1600, description="Width of the lanes.")
+    pictures: bool = Field(default=True, description="Whether structure and lanes are drawn.")
 
 
 class ReportRequest(CompareRequest):

@@ -213,3 +213,30 @@ def test_candidates_are_put_in_order(page):
     page.click("#rank")
     page.wait_for_selector("#ranking td")
     assert page.locator("#ranking tbody tr").first.inner_text().startswith("CCOC(=O)c1ccccc1")
+
+
+def test_many_samples_run_filter_open(page, address):
+    page.goto(address + "triage")
+    rows = [
+        "sample,smiles,c13,h1,solvent",
+        f'right,CCOC(=O)c1ccccc1,"{C13}",,CDCl3',
+        f'wrong,CCC(=O)Oc1ccccc1,"{C13}",,CDCl3',
+        "=1+1,C1CC,20,,",
+    ]
+    page.fill("#table", "\n".join(rows))
+    page.click("#run")
+    page.wait_for_selector("#said:has-text('All 3 done')")
+    lines = [line.inner_text() for line in page.locator("#rows tbody tr").all()]
+    assert "supported" in lines[0] and "supported" not in lines[1] and "not judged" in lines[2]
+    shoot(page, "triage")
+    page.evaluate(AXE.read_text(encoding="utf-8"))
+    assert [v["id"] for v in page.evaluate("axe.run()")["violations"]] == []
+    page.select_option("#judgements", "supported")
+    assert page.locator("#rows tbody tr").count() == 1
+    with page.context.expect_page() as opened:
+        page.click("#rows a")
+    opened.value.wait_for_selector("#judgement .verdict")
+    assert opened.value.input_value("#sample") == "right"
+    page.fill("#table", "smiles,c13\n" + "CCO,58\n" * 3000)
+    page.click("#run")
+    page.wait_for_selector("#said:has-text('at most 2,000')")

@@ -124,10 +124,11 @@ def test_description_has_examples_that_work(client):
 def test_page_and_its_parts_are_shipped(client):
     import re
 
-    page = client.get("/")
-    assert page.status_code == 200
-    for address in re.findall(r'(?:src|href)="(/[^"]+)"', page.text):
-        assert client.get(address).status_code == 200, address
+    for page in (client.get("/"), client.get("/triage")):
+        assert page.status_code == 200
+        for address in re.findall(r'(?:src|href)="(/[^"]*)"', page.text):
+            assert client.get(address).status_code == 200, address
+    assert client.get("/static/shared.js").status_code == 200
     assert client.get("/static/vendor/openchemlib/openchemlib.js").status_code == 200
     assert client.get("/static/vendor/openchemlib/LICENSE").status_code == 200
 

@@ -155,7 +155,7 @@ def test_page_names_no_outside_address():
     import shiftpred.web
 
     folder = Path(shiftpred.web.__file__).parent / "static"
-    for name in ("page.html", "page.js", "page.css"):
+    for name in ("page.html", "page.js", "page.css", "shared.js", "triage.html", "triage.js"):
         text = (folder / name).read_text(encoding="utf-8")
         assert "//" not in text.replace("// ", "").replace('"//', ""), name
         assert "innerHTML" not in text and "insertAdjacentHTML" not in text and "eval(" not in text

@@ -1,42 +1,17 @@
 // The page: state → questions to this server → pictures and tables. Every text goes in as text, never as HTML.
-const $ = (id) => document.getElementById(id);
-const FIELDS = ["structure", "c13", "h1", "solvent", "frequency_mhz", "coverage", "rivals", "prior", "mass_confirmed", "expected", "sample", "candidates"];
-const BLANK = { structure: "", c13: "", h1: "", solvent: "", frequency_mhz: "", coverage: "0.9", rivals: "9", prior: "0.5", mass_confirmed: false, expected: "", sample: "", candidates: "" };
+import { $, BLANK, FIELDS, LONGEST, SIGN, ask, buildFault, buildTable, encode, formatProbability, make } from "/static/shared.js";
 const EXAMPLE = { ...BLANK, structure: "CCOC(=O)c1ccccc1", solvent: "CDCl3",
   c13: "13C NMR (101 MHz, CDCl3) δ 166.6, 132.8, 130.5, 129.5 (2C), 128.3 (2C), 60.9, 14.3",
   h1: "1H NMR (400 MHz, CDCl3) δ 8.04 (m, 2H), 7.55 (m, 1H), 7.43 (m, 2H), 4.38 (q, J = 7.1 Hz, 2H), 1.39 (t, J = 7.1 Hz, 3H)" };
-const SIGN = { supported: "●", open: "◐", contradicted: "◆" };
 const KEY = "shiftpred-input";
 const NUMBERS = new Set(["Predicted", "Interval", "Observed", "Deviation", "Certain"]);
-const LONGEST = 200000; // characters of one field; the server refuses more
+const checked = new Map(); // what the server said about a peak list
 let past = [], future = [], current = { ...BLANK }, last = null, shown = "13C", timer = 0, running = null, whyAsked = null;
 
 // ---- small tools
-function make(tag, attributes = {}, ...children) {
-  const node = document.createElement(tag);
-  for (const [name, value] of Object.entries(attributes)) {
-    if (name.startsWith("on")) node.addEventListener(name.slice(2), value);
-    else if (value !== null && value !== undefined && value !== false) node.setAttribute(name, value === true ? "" : value);
-  }
-  node.append(...children.filter((c) => c !== null && c !== undefined));
-  return node;
-}
 function readPicture(text) {
   const found = new DOMParser().parseFromString(text, "image/svg+xml").documentElement;
   return found.nodeName === "svg" ? document.importNode(found, true) : make("p", {}, "no picture");
-}
-async function ask(route, body, signal) {
-  let answer;
-  try {
-    answer = await fetch(`/api/${route}`, { method: "POST", headers: { "content-type": "application/json" }, body: JSON.stringify(body), signal });
-  } catch (error) {
-    if (error.name === "AbortError") throw error;
-    throw Object.assign(new Error("the server does not answer; is `shiftpred serve` still running?"), { parts: null });
-  }
-  if (route === "report" && answer.ok) return answer.text();
-  const found = await answer.json();
-  if (!answer.ok) throw Object.assign(new Error(found.error.message), { parts: found.error });
-  return found;
 }
 function save(name, text, kind) {
   const address = URL.createObjectURL(new Blob([text], { type: kind }));
@@ -52,13 +27,6 @@ async function savePng(name, svg) {
   sheet.toBlob((blob) => save(name, blob, "image/png"), "image/png");
 }
 const format = (value, nucleus) => (value === null || value === undefined ? "" : value.toFixed(nucleus === "13C" ? 1 : 2));
-function formatProbability(p) { return p === null ? "" : p > 0.999 ? "> 0.999" : p < 0.001 ? "< 0.001" : p.toFixed(3); }
-function buildFault(error) {
-  const parts = error.parts;
-  if (!parts) return make("p", { class: "fault" }, error.message);
-  return make("p", { class: "fault" }, make("strong", {}, `${parts.where}: `), `got ${parts.came}; expected ${parts.would_do}. Try: ${parts.try_next}`);
-}
-
 function buildLengthFault(text) {
   return make("p", { class: "fault" }, `${text.length.toLocaleString("en")} characters; expected at most ${LONGEST.toLocaleString("en")}. Try: one structure, and the picked peaks of one spectrum.`);
 }
@@ -87,11 +55,6 @@ function setInput(input, isStep = false) {
   writeInput(whole);
   if (isStep) current = whole; else remember(whole);
   keepInput(); answer();
-}
-function encode(input) {
-  const kept = Object.fromEntries(Object.entries(input).filter(([k, v]) => v !== BLANK[k]));
-  const bytes = new TextEncoder().encode(JSON.stringify(kept));
-  return btoa(Array.from(bytes, (b) => String.fromCharCode(b)).join("")).replaceAll("+", "-").replaceAll("/", "_").replace(/=+$/, "");
 }
 function decode(hash) {
   try {
@@ -149,7 +112,7 @@ async function checkPeaks(field, nucleus, text, signal) {
   if (!text.trim()) { place.replaceChildren(); return true; }
   if (text.length > LONGEST) { box.setAttribute("aria-invalid", "true"); place.replaceChildren(buildLengthFault(text)); return false; }
   let found;
-  try { found = await ask("peaks", { nucleus, text }, signal); } catch (error) {
+  try { found = checked.get(`${nucleus} ${text}`) ?? await ask("peaks", { nucleus, text }, signal); if (checked.size > 50) checked.clear(); checked.set(`${nucleus} ${text}`, found); } catch (error) {
     if (error.name === "AbortError") throw error;
     found = { error: error.parts ?? { message: error.message, problems: [] } };
   }
@@ -265,10 +228,6 @@ function buildRow(n, nucleus, found, missing) {
   row.addEventListener("pointerenter", () => light(n.equivalent_atoms)); row.addEventListener("pointerleave", () => light([]));
   row.addEventListener("focusin", () => light(n.equivalent_atoms)); row.addEventListener("focusout", () => light([]));
   return row;
-}
-function buildTable(label, heads, rows) {
-  return make("div", { class: "scroll" }, make("table", { class: "stack", "aria-label": label }, make("thead", {}, make("tr", {}, ...heads.map((h) => make("th", { scope: "col" }, h)))),
-    make("tbody", {}, ...rows.map((cells) => make("tr", {}, ...cells.map((c, i) => make("td", { "data-name": i ? heads[i].toLowerCase() : null, class: heads[i] === "SMILES" ? "smiles" : null }, c)))))));
 }
 function showLeftovers(d) {
   $("leftovers-body").replaceChildren(d.unexplained.length
