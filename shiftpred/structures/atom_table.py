@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
-from rdkit import Chem
+from rdkit import Chem, rdBase
 
-__all__ = ["AtomTable", "build_atom_table"]
+__all__ = ["AtomTable", "build_atom_table", "find_rings"]
 
 
 class AtomTable:
@@ -54,4 +54,14 @@ class AtomTable:
 
 def build_atom_table(mol: Chem.Mol) -> AtomTable:
     """Read the table of a sanitised molecule."""
+    find_rings(mol)
     return AtomTable(mol)
+
+
+def find_rings(mol: Chem.Mol) -> None:
+    """Look for rings where RDKit has dropped them, as renumbering and ranking atoms sometimes does."""
+    with rdBase.BlockLogs():
+        try:
+            mol.GetRingInfo().NumRings()
+        except RuntimeError:
+            Chem.GetSymmSSSR(mol)

@@ -19,7 +19,7 @@ from dataclasses import dataclass
 import numpy as np
 from rdkit import Chem
 
-from shiftpred.structures.atom_table import AtomTable, build_atom_table
+from shiftpred.structures.atom_table import AtomTable, build_atom_table, find_rings
 from shiftpred.structures.stereo_elements import StereoElements, find_stereo_elements, follow_cumulene, holds_nitrogen_planar
 from shiftpred.structures.symmetry import SymmetrySearch
 
@@ -73,11 +73,26 @@ def compute_equivalence(mol: Chem.Mol, table: AtomTable | None = None, deuterium
     """
     table = table or build_atom_table(mol)
     rank = _compute_constitutional_rank(mol, table, deuterium)
+    find_rings(mol)
     elements = find_stereo_elements(table, rank)
-    found = _Groups(table, rank, elements)
-    return Equivalence(
-        np.array(found.group, dtype=np.int64), np.array(rank, dtype=np.int64), np.array(found.differ, dtype=bool)
-    )
+    constitutional = np.array(rank, dtype=np.int64)
+    if not _leaves_choices(elements, rank):
+        found = _Groups(table, rank, elements)
+        return Equivalence(np.array(found.group, dtype=np.int64), constitutional, np.array(found.differ, dtype=bool))
+    # What is not drawn is settled on the way; in canonical order, so that the answer does not depend on that of the atoms.
+    place = np.array(list(Chem.CanonicalRankAtoms(mol)))
+    order = np.argsort(place)
+    table, rank = build_atom_table(Chem.RenumberAtoms(mol, order.tolist())), constitutional[order].tolist()
+    found = _Groups(table, rank, find_stereo_elements(table, rank))
+    group, differ = np.array(found.group, dtype=np.int64), np.array(found.differ, dtype=bool)
+    return Equivalence(group[place], constitutional, differ[place])
+
+
+def _leaves_choices(elements: StereoElements, rank: list[int]) -> bool:
+    """Say whether elements without drawn configuration could be exchanged with one another."""
+    open_ranks = [rank[i] for i, drawn in elements.tetrahedral.items() if not drawn]
+    open_ends = [frozenset(rank[k] for k in element.ends) for element in elements.planar if not element.drawn]
+    return len(set(open_ranks)) < len(open_ranks) or len(set(open_ends)) < len(open_ends)
 
 
 def _compute_constitutional_rank(mol, table, deuterium=()) -> list[int]:

@@ -58,7 +58,7 @@ class StereoElements:
     true_centres: set[int] = field(default_factory=set)
     """Tetrahedral atoms whose ligands all differ by constitution."""
     open_centres: set[int] = field(default_factory=set)
-    """Those of `true_centres` whose configuration is neither drawn nor forced by a bridge."""
+    """True centres, and ring atoms with two different faces, whose configuration is neither drawn nor forced by a bridge."""
 
 
 def compute_parity(given: list[int], wanted: list[int]) -> int:
@@ -97,8 +97,12 @@ def find_stereo_elements(table: AtomTable, rank: list[int]) -> StereoElements:
     elements = StereoElements()
     _find_tetrahedral(table, rank, elements)
     _relate_bridgeheads(table, rank, elements)
-    elements.open_centres = {i for i in elements.true_centres if not elements.tetrahedral[i]}
-    _find_double_bonds(table, elements)
+    elements.open_centres = {
+        i
+        for i, drawn in elements.tetrahedral.items()
+        if not drawn and (i in elements.true_centres or _is_ring_centre(table, rank, i))
+    }
+    _find_double_bonds(table, rank, elements)
     _find_slow_rotors(table, rank, elements)
     for k, element in enumerate(elements.planar):
         for end in element.ends:
@@ -142,6 +146,16 @@ def _is_bridgehead(table, i):
         return False
     own = [set(ring) for ring in info.AtomRings() if i in ring]
     return any(len(one & other) > 2 for k, one in enumerate(own) for other in own[:k])
+
+
+def _is_ring_centre(table, rank, i):
+    """Say whether equal ligands of an atom are held apart by a ring (C-1 of 1,4-dimethylcyclohexane)."""
+    mol, info = table.mol, table.mol.GetRingInfo()
+    if not info.NumAtomRings(i):
+        return False
+    near = table.neighbours[i]
+    ranks = [rank[j] for j in near]
+    return any(ranks.count(rank[j]) > 1 and info.NumBondRings(mol.GetBondBetweenAtoms(i, j).GetIdx()) for j in near)
 
 
 def _relate_bridgeheads(table, rank, elements):
@@ -191,8 +205,9 @@ def _has_exchanging_oxygens(table, i):
     return len(terminal) > 1 and len({table.elements[j] for j in terminal}) < len(terminal)
 
 
-def _find_double_bonds(table, elements):
+def _find_double_bonds(table, rank, elements):
     info = table.mol.GetRingInfo()
+    delocalised = _find_delocalised(table, rank)
     for i, orders in enumerate(table.orders):
         if 2.0 not in orders or not _can_end(table, i):
             continue
@@ -201,7 +216,7 @@ def _find_double_bonds(table, elements):
                 continue
             *between, end = follow_cumulene(table, i, j)
             before = between[-1] if between else i
-            if end <= i or not _can_end(table, end):
+            if end <= i or not _can_end(table, end) or frozenset((rank[i], rank[j])) in delocalised:
                 continue
             first = [k for k in table.neighbours[i] if k != j]
             last = [k for k in table.neighbours[end] if k != before]
@@ -228,6 +243,17 @@ def follow_cumulene(table: AtomTable, i: int, j: int) -> list[int]:
             break
         found.append(j)
     return found
+
+
+def _find_delocalised(table, rank):
+    """Return the pairs of ranks whose bond is double in one place and single in another: one bond order by resonance."""
+    if not any(a.GetFormalCharge() for a in table.atoms):
+        return frozenset()
+    found: dict[frozenset[int], set[float]] = {}
+    for i, near in enumerate(table.neighbours):
+        for j, order in zip(near, table.orders[i]):
+            found.setdefault(frozenset((rank[i], rank[j])), set()).add(order)
+    return frozenset(pair for pair, orders in found.items() if len(orders) > 1)
 
 
 def _can_end(table, i):

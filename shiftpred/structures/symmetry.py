@@ -142,9 +142,9 @@ class SymmetrySearch:
     def _list_choices(self, free, targets):
         rank = self.rank
         groups: dict[int, tuple[list[int], list[int]]] = {}
-        for w in free:
+        for w in sorted(free):
             groups.setdefault(rank[w], ([], []))[0].append(w)
-        for x in targets:
+        for x in sorted(targets):
             if rank[x] not in groups:
                 return
             groups[rank[x]][1].append(x)
