@@ -29,6 +29,7 @@ from shiftpred.substituents.group_codes import compute_group_codes
 from shiftpred.substituents.positions import POSITIONS
 from shiftpred.training.assign_open_peaks import PeakPlacer
 from shiftpred.training.open_tables import Compound
+from shiftpred.training.settle_increments import compute_settled_increments
 
 __all__ = [
     "ShrunkenRidge",
@@ -398,10 +399,13 @@ def _fit_table(design, nucleus, index, y, weight, alpha) -> NucleusTable:
     beta = np.zeros(design.rows.shape[1])
     beta[kept] = ridge.coef_
     coefficients = beta[:n_constants].reshape(len(design.classes), len(POSITIONS), len(CONSTANTS))
-    used = np.flatnonzero(np.abs(beta[n_constants:]) >= NEGLIGIBLE_PPM[nucleus])
+    fitted = [k for k in kept if k >= n_constants]
+    terms = [design.terms[k - n_constants] for k in fitted]
+    settled = compute_settled_increments(
+        dict(zip(terms, beta[fitted].tolist(), strict=True)), dict(zip(terms, count[fitted].tolist(), strict=True))
+    )
     # Rounded to the precision in which they are stored, so that a reloaded model predicts the same.
-    values = beta[n_constants:][used].astype(np.float32).astype(float)
-    increments = dict(zip((design.terms[k] for k in used), values.tolist(), strict=True))
+    increments = {t: float(np.float32(v)) for t, v in settled.items() if abs(v) >= NEGLIGIBLE_PPM[nucleus]}
     return NucleusTable(ridge.intercept_, increments, design.classes, coefficients)
 
 
