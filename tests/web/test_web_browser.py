@@ -237,8 +237,15 @@ def test_many_samples_run_filter_open(page, address):
         page.click("#rows a")
     opened.value.wait_for_selector("#judgement .verdict")
     assert opened.value.input_value("#sample") == "right"
-    opened.value.close()
-    page.bring_to_front()  # a page in the background draws nothing and waits
+
+
+def test_table_that_is_too_long_is_refused_in_words(page, address):
+    page.goto(address + "triage")
     page.fill("#table", "smiles,c13\n" + "CCO,58\n" * 3000)
     page.click("#run")
     page.wait_for_selector("#said:has-text('at most 2,000')")
+    page.evaluate(
+        "document.querySelector('#table').value = 'smiles,c13' + String.fromCharCode(10) + 'CCO,58\\n'.repeat(1000000)"
+    )
+    page.click("#run")
+    page.wait_for_selector("#said:has-text('at most 3,000,000')")
