@@ -94,11 +94,11 @@ def _cut_connection_table(lines, place):
     counts = next((k for k, line in enumerate(lines[:12]) if is_counts_line(line)), None)
     end = next((k for k, line in enumerate(lines) if line.startswith("M  END")), None)
     notes = ()
+    if any(line.startswith(("$RXN", "$RDFILE", "$MDL")) for line in lines[:_HEADER_LINES]):
+        raise StructureError(place, "a reaction or query file", "a molfile or an SDF", "export the molecules one by one")
     if counts is None:
         if not any(line.strip() for line in lines):
             raise StructureError(place, "an empty record", "a molfile", "check that the export worked")
-        if any(line.startswith(("$RXN", "$RDFILE", "$MDL")) for line in lines[:3]):
-            raise StructureError(place, "a reaction or query file", "a molfile or an SDF", "export the molecules one by one")
         if len(lines) <= _HEADER_LINES or end is None:
             raise StructureError(place, "a molfile without a counts line", "MOL V2000 or V3000", "export the structure again")
         counts = _HEADER_LINES  # old files carry no version
