@@ -1,14 +1,19 @@
 """Read structures and files; sites, equivalence, numbering; rivals."""
 
-from shiftpred.structures.environments import coarser_environment, compute_environments
+from shiftpred.structures.building import LARGEST_STRUCTURE
+from shiftpred.structures.environments import coarser_environment, compute_environments, compute_site_environments
+from shiftpred.structures.equivalence import Equivalence, compute_equivalence
 from shiftpred.structures.reading import parse_structure, parse_structures
-from shiftpred.structures.sites import compute_equivalence, compute_sites
+from shiftpred.structures.sites import compute_sites
 from shiftpred.structures.standardise import standardise_mol
 
 __all__ = [
+    "LARGEST_STRUCTURE",
+    "Equivalence",
     "coarser_environment",
     "compute_environments",
     "compute_equivalence",
+    "compute_site_environments",
     "compute_sites",
     "parse_structure",
     "parse_structures",

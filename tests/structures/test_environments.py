@@ -1,9 +1,18 @@
 """Environment classes and their coarser ones."""
 
+from pathlib import Path
+
+import numpy as np
 import pytest
 from rdkit import Chem
 
 from shiftpred.structures import coarser_environment, compute_environments
+
+
+@pytest.fixture(scope="module")
+def molecules():
+    lines = (Path(__file__).parent / "molecules.smi").read_text(encoding="utf-8").splitlines()
+    return [line.split()[0] for line in lines]
 
 
 @pytest.mark.parametrize(
@@ -46,3 +55,36 @@ def test_chain_of_coarser_classes_ends():
         chain.append(name)
         name = coarser_environment(name)
     assert chain == ["sp3 CH2, on O", "sp3 CH2", "sp3"]
+
+
+@pytest.mark.parametrize(
+    "smiles", ["CC1(C)SC2CC(=O)N2C1C(=O)O", "FN1CCCC1(F)F", "O=P1(Cl)CSC1", "CC(Br)P(C)(C)=O", "COC(Cl)N(C)C"]
+)
+def test_two_heteroatoms_in_any_order(smiles):
+    mol = Chem.MolFromSmiles(smiles)
+    expected = compute_environments(mol, "13C")
+    for seed in range(8):
+        order = np.random.default_rng(seed).permutation(mol.GetNumAtoms()).tolist()
+        assert compute_environments(Chem.RenumberAtoms(mol, order), "13C") == [expected[i] for i in order]
+
+
+def test_every_class_has_a_chain_that_ends(molecules):
+    names = {
+        name
+        for smiles in molecules
+        for nucleus in ("13C", "1H")
+        for name in compute_environments(Chem.MolFromSmiles(smiles), nucleus)
+    }
+    assert len(names - {None}) > 40
+    for name in names - {None}:
+        for _ in range(3):
+            name = coarser_environment(name)
+        assert name == ""
+
+
+def test_none_where_there_is_no_such_nucleus(molecules):
+    for smiles in molecules:
+        mol = Chem.MolFromSmiles(smiles)
+        for atom, carbon, hydrogen in zip(mol.GetAtoms(), compute_environments(mol, "13C"), compute_environments(mol, "1H")):
+            assert (carbon is None) == (atom.GetAtomicNum() != 6)
+            assert (hydrogen is None) == (atom.GetTotalNumHs() == 0)
