@@ -47,6 +47,7 @@ def command(port, host, no_browser, workers) -> int:
     listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
     try:
         listener.bind((host, port))
+        listener.listen(64)  # from now on whoever asks is kept waiting, not turned away
     except (OSError, OverflowError) as error:
         listener.close()
         reason = getattr(error, "strerror", None) or str(error)

@@ -35,11 +35,14 @@ def test_it_answers_at_the_address_that_it_prints_and_ends_when_told():
     pytest.importorskip("fastapi")
     arguments = [sys.executable, "-m", "shiftpred", "serve", "--port", "0", "--no-browser", "--workers", "1"]
     with subprocess.Popen(arguments, stdout=subprocess.PIPE, text=True) as server:
-        address = server.stdout.readline().strip()
-        assert address.startswith("http://127.0.0.1:")
-        body = json.dumps({"structure": "CCO"}).encode()
-        request = urllib.request.Request(address + "api/structure", body, {"content-type": "application/json"})
-        with urllib.request.urlopen(request, timeout=60) as answer:
-            assert json.load(answer)["structure"]["formula"] == "C2H6O"
-        server.terminate()
-        assert server.wait(20) is not None
+        try:
+            address = server.stdout.readline().strip()
+            assert address.startswith("http://127.0.0.1:")
+            body = json.dumps({"structure": "CCO"}).encode()
+            request = urllib.request.Request(address + "api/structure", body, {"content-type": "application/json"})
+            with urllib.request.urlopen(request, timeout=60) as answer:
+                assert json.load(answer)["structure"]["formula"] == "C2H6O"
+            server.terminate()
+            server.wait(20)
+        finally:
+            server.kill()
