@@ -29,37 +29,13 @@ class PeakModelParameters:
     """The same for water, which moves with concentration and temperature (common practice, no source)."""
     warn_offset_ppm: float
     """Offset from which a warning is given (the design's choice)."""
-    widening: float
-    """Factor on the error scale: the errors of one molecule go together, so that each line says less than it seems (fitted)."""
-    least_degrees: float
-    """Fewest degrees of freedom of the error distribution (fitted)."""
+    pair_tolerance_ppm: float
+    """How far the coordinate of a C-H pair may lie from the line in the other list (common practice, no source)."""
     smallest_scale_ppm: float
     """Floor for the scale of the error distribution: digits printed, temperature, concentration (common practice)."""
 
 
 PARAMETERS = {
-    "13C": PeakModelParameters(
-        resolution_ppm=0.15,
-        extra_lines=0.10,
-        reference_prior_ppm=0.30,
-        solvent_scale_ppm=0.12,
-        impurity_scale_ppm=0.15,
-        water_scale_ppm=0.15,
-        warn_offset_ppm=0.30,
-        widening=1.6,
-        least_degrees=4.0,
-        smallest_scale_ppm=0.15,
-    ),
-    "1H": PeakModelParameters(
-        resolution_ppm=0.04,
-        extra_lines=0.15,
-        reference_prior_ppm=0.03,
-        solvent_scale_ppm=0.012,
-        impurity_scale_ppm=0.02,
-        water_scale_ppm=0.12,
-        warn_offset_ppm=0.05,
-        widening=1.1,
-        least_degrees=4.0,
-        smallest_scale_ppm=0.02,
-    ),
+    "13C": PeakModelParameters(0.15, 0.10, 0.30, 0.12, 0.15, 0.15, 0.30, 0.5, 0.15),
+    "1H": PeakModelParameters(0.04, 0.15, 0.03, 0.012, 0.02, 0.12, 0.05, 0.04, 0.02),
 }

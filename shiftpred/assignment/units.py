@@ -24,8 +24,8 @@ _EXCHANGING_TOGETHER = 0.85
 
 _DIASTEREOTOPIC_GAP_PPM = {"13C": 0.6, "1H": 0.05}
 _ROTAMER_GAP_PPM = {"13C": 2.0, "1H": 0.06}
-"""Half the usual distance of the lines of two groups that are alike but for stereo, or of the two groups on an amide's
-nitrogen: a prediction gives both their mean (from memory: N,N-dimethylformamide 36.5 and 31.4, N,N-dimethylacetamide 38.0 and 35.0)."""
+"""Half the usual distance of the lines of two groups that are alike but for stereo, or of the two groups on an amide's nitrogen:
+a prediction gives both their mean (from memory: N,N-dimethylformamide 36.5 and 31.4, N,N-dimethylacetamide 38.0 and 35.0)."""
 
 
 @dataclass(frozen=True)
@@ -107,7 +107,7 @@ def build_units(prediction: MoleculePrediction, nucleus: str) -> Units:
         notes.append(note)
         partner[k], together[k] = _find_partner(rows, place, sites, k)
         gap = _find_gap(mol, site, nucleus, row.hydrogen)
-        scale[k] = parameters.widening * max(float(np.hypot(row.scale_ppm, gap)), parameters.smallest_scale_ppm)
+        scale[k] = max(float(np.hypot(row.scale_ppm, gap)), parameters.smallest_scale_ppm)
     for atoms in find_exchanging_atoms(mol):
         _average_exchanging(rows, atoms, shift, together, partner, notes)
     return Units(
@@ -119,7 +119,7 @@ def build_units(prediction: MoleculePrediction, nucleus: str) -> Units:
         attached_h=np.array([r.attached_h for r in rows], dtype=int),
         shift=shift,
         scale=scale,
-        degrees=np.array([max(r.degrees_of_freedom, parameters.least_degrees) for r in rows], dtype=float),
+        degrees=np.array([r.degrees_of_freedom for r in rows], dtype=float),
         labile=labile,
         missing=missing,
         missing_note=tuple(notes),

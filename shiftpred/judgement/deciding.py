@@ -77,7 +77,7 @@ def _expected_by_line(fit: NucleusFit) -> dict[int, tuple[float, float]]:
         column = fit.chosen[k] if fit.chosen[k] >= 0 else fit.sharing[k]
         if column < 0 or fit.units.labile[k]:
             continue
-        degrees, z = fit.units.degrees[k], fit.z[k]
+        degrees, z = fit.units.degrees[k], fit.terms["z"][k]
         misfit = (degrees + 1) / 2 * np.log1p(z * z / degrees)
         for line in fit.columns[column].lines:
             if line not in out or misfit < out[line][1]:

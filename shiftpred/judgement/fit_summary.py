@@ -57,14 +57,14 @@ def compute_fit_summary(fit: StructureFit) -> FitSummary:
     extra = missing = lines = units = novel = 0
     offset = 0.0
     for nucleus, one in fit.nuclei.items():
-        found = one.has_line & ~one.units.labile
-        degrees, z = one.units.degrees[found], one.z[found]
+        found = one.terms["has_line"] & ~one.units.labile
+        degrees, z = one.units.degrees[found], one.terms["z"][found]
         deviance = np.minimum((degrees + 1) / 2 * np.log1p(z * z / degrees), _LARGEST_DEVIANCE)
         deviances.append(deviance)
         expected += float(((degrees + 1) / 2 * (digamma((degrees + 1) / 2) - digamma(degrees / 2))).sum())
         variance += float((((degrees + 1) / 2) ** 2 * (polygamma(1, degrees / 2) - polygamma(1, (degrees + 1) / 2))).sum())
         extra += len(one.leftover)
-        missing += one.unexcused
+        missing += one.terms["unexcused"]
         lines += len(one.lines)
         units += int((~one.units.labile).sum())
         novel += sum("training data" in row.note for row in one.units.rows)

@@ -213,7 +213,7 @@ def _build_steps(proposal, peaks, fits, settings, judgement_map, lists) -> tuple
         guests = int((one.chosen[n:] >= 0).sum())
         steps.append(
             f"{nucleus}: {len(one.lines)} lines, {n} sets of equivalent nuclei; {assigned} assigned, {shared} share a "
-            f"line, {len(one.missing)} missing; {guests} solvent, water or impurity, {len(one.leftover)} unexplained"
+            f"line, {len(one.terms['missing'])} missing; {guests} solvent, water or impurity, {len(one.leftover)} unexplained"
         )
     steps.append(f"compared with {len(fits) - 1} rivals; prior {settings.prior:g}; map for {lists}")
     steps.append(

@@ -90,9 +90,9 @@ def _ratios(one: NucleusFit) -> list[tuple[int, float]]:
     """Return (unit, deviation in half-widths of its interval) for the units with a line, labile ones left out."""
     out = []
     for k, row in enumerate(one.units.rows):
-        if one.has_line[k] and not one.units.labile[k]:
+        if one.terms["has_line"][k] and not one.units.labile[k]:
             half = (row.upper_ppm - row.lower_ppm) / 2
-            out.append((k, one.z[k] * one.units.scale[k] / half if math.isfinite(half) and half > 0 else 0.0))
+            out.append((k, one.terms["z"][k] * one.units.scale[k] / half if math.isfinite(half) and half > 0 else 0.0))
     return out
 
 
@@ -107,7 +107,7 @@ def _describe_nuclei(nucleus: str, one: NucleusFit) -> list[tuple[float, str]]:
     digits, out = _DIGITS[nucleus], []
     bad = sorted((r for r in _ratios(one) if abs(r[1]) > _OFF_FROM), key=lambda r: (-abs(r[1]), r[0]))
     for k, ratio in bad[:_MOST_NUCLEI]:
-        degrees, z = one.units.degrees[k], one.z[k]
+        degrees, z = one.units.degrees[k], one.terms["z"][k]
         weight = float((degrees + 1) / 2 * np.log1p(z * z / degrees))
         expected = one.units.shift[k] + one.offset_ppm
         observed = expected + z * one.units.scale[k]
@@ -147,7 +147,7 @@ def _describe_leftovers(nucleus: str, one: NucleusFit) -> list[tuple[float, str]
 
 def _describe_missing(nucleus: str, one: NucleusFit) -> list[tuple[float, str]]:
     digits, out = _DIGITS[nucleus], []
-    for k in one.missing:
+    for k in one.terms["missing"]:
         if one.units.labile[k]:
             continue
         note = one.missing_notes[k]
