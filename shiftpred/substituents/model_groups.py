@@ -3,8 +3,8 @@
 Rule for large groups. The model knows a group out to its gamma atoms (attached atom, its neighbours, theirs). What lies
 further out is replaced by hydrogen, except that an aromatic ring is never cut: it is completed to the plain ring
 (phenyl, pyridyl, furyl, …) that has the same atoms next to the point of attachment. Of a ring that the site itself
-belongs to, the group unrolls the far side; its aromatic bonds alternate, so benzene's ortho carbon counts as a vinyl
-group, pyridine's nitrogen as a methylideneamino group, furan's oxygen as a vinyloxy group. Acetoxy, nitro, tert-butyl,
+belongs to, the group unrolls the far side; its aromatic bonds alternate, so benzene's ortho carbon counts as a propenyl
+group, pyridine's nitrogen as a ethylideneamino group, furan's oxygen as a vinyloxy group. Acetoxy, nitro, tert-butyl,
 methoxycarbonyl, benzyl and their like are kept whole by this.
 """
 
@@ -67,7 +67,7 @@ def build_model_group(code: str) -> str | None:
     Examples
     --------
     >>> build_model_group("-O0(-C0(-C)(=O))"), build_model_group(":c1r6(:c1r6(:c))")
-    ('*OC(C)=O', '*C=C')
+    ('*OC(C)=O', '*C=CC')
     """
     root = _parse(code)
     for plain_rings in (False, True):

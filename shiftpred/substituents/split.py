@@ -79,7 +79,7 @@ def split_substituents(mol: Chem.Mol, atom_index: int, codes: GroupCodes | None 
     --------
     >>> from rdkit import Chem
     >>> [(s.position, s.name) for s in split_substituents(Chem.MolFromSmiles("CCOC(C)=O"), 1)]
-    [('alpha', 'methyl'), ('alpha', 'acetoxy'), ('beta', 'acetyl'), ('gamma', 'methyl'), ('gamma', 'oxo')]
+    [('alpha', 'methyl'), ('alpha', 'acetoxy'), ('beta', 'acetyl'), ('gamma', 'oxo'), ('gamma', 'methyl')]
     """
     _require_site(mol, atom_index)
     return _split(build_bare_molecule(mol), codes or compute_group_codes(mol), atom_index, {})

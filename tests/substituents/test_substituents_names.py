@@ -1,6 +1,8 @@
 """Names of groups: the table, names put together from parts, and the fallback."""
 
 import csv
+import doctest
+from importlib import import_module
 from importlib.resources import files
 
 import pytest
@@ -88,3 +90,9 @@ def test_a_name_says_neither_more_nor_less_than_the_group():
 )
 def test_ring_atoms_are_named_by_what_they_are(symbol, hydrogens, name):
     assert name_ring_atom(symbol, hydrogens) == name
+
+
+@pytest.mark.parametrize("module", ["group_codes", "group_smiles", "model_groups", "names", "split"])
+def test_the_examples_in_the_documentation_run(module):
+    result = doctest.testmod(import_module(f"shiftpred.substituents.{module}"))
+    assert result.attempted and not result.failed
