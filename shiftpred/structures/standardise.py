@@ -12,6 +12,14 @@ _EXPANDING = frozenset((15, 16, 33, 34, 52, 53))
 _PARTNERS = frozenset((6, 7, 8, 16, 34))
 _METALS = frozenset([3, 4, 11, 12, 13, *range(19, 32), *range(37, 51), *range(55, 85), *range(87, 104)])
 
+# RDKit renamed this call in 2024.09 and prints a warning at every use of the old name.
+if hasattr(Chem, "ValenceType"):
+    def _compute_explicit_valence(atom):
+        return atom.GetValence(Chem.ValenceType.EXPLICIT)
+else:
+    def _compute_explicit_valence(atom):
+        return atom.GetExplicitValence()
+
 
 def standardise_mol(mol: Chem.Mol) -> tuple[Chem.Mol, tuple[int, ...], tuple[int, ...], tuple[str, ...]]:
     """Bring a sanitised molecule to the form that predictions see.
@@ -47,7 +55,7 @@ def standardise_mol(mol: Chem.Mol) -> tuple[Chem.Mol, tuple[int, ...], tuple[int
     labels = any(a.GetIsotope() or a.GetAtomMapNum() for a in atoms)
     radicals = any(a.GetNumRadicalElectrons() for a in atoms)
     metals = not _METALS.isdisjoint(elements)
-    dative = 5 in elements or metals or any(a.GetExplicitValence() < a.GetDegree() for a in atoms)
+    dative = 5 in elements or metals or any(_compute_explicit_valence(a) < a.GetDegree() for a in atoms)
     kept: tuple[int, ...] = tuple(range(len(atoms)))
     if not (charges or labels or radicals or dative or 1 in elements):
         return mol, kept, (), ()

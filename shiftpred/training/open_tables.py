@@ -12,10 +12,10 @@ from rdkit import Chem
 
 from shiftpred.errors import InputError
 from shiftpred.features.solvents import SOLVENTS
+from shiftpred.structures.standardise import standardise_mol
 
 __all__ = ["Compound", "compute_split", "connectivity", "load_open_tables"]
 
-SPLITS = ("train", "calibration", "test")
 _RANGE = {"13C": (-30.0, 270.0), "1H": (-5.0, 20.0)}
 
 
@@ -95,6 +95,10 @@ def load_open_tables(folder: str | Path, exclude: frozenset[str] = frozenset(), 
         if mol is None or not 0 < mol.GetNumAtoms() <= max_atoms:
             continue
         plain = connectivity(mol)
+        try:
+            mol = standardise_mol(mol)[0]  # what prediction sees, too
+        except Chem.MolSanitizeException:
+            continue
         compound = _build_compound(key, smiles[key], mol, group)
         compound.split = "excluded" if plain in exclude else compute_split(plain)
         out.append(compound)

@@ -39,7 +39,7 @@ class NetworkSettings:
     layers: int = 6
     message: int = 128
     hidden: int = 384
-    passes: int = 45
+    passes: int = 54
     first_passes: int = 2
     """Passes on the first assignment (by the substituent model, or of the unambiguous peaks alone)."""
     batch: int = 48
@@ -62,7 +62,7 @@ _CENTRE = np.array(OUTPUT_CENTRE)
 _T_UNIT = torch.tensor(OUTPUT_UNIT)
 # Weight of one ppm in the loss, and the error (ppm) beyond which it counts less and less: a wrong label or a wrong spectrum
 # must not pull as hard as its distance.
-_T_WEIGHT = torch.tensor([0.5, 5.0, 2.5])
+_T_WEIGHT = torch.tensor([0.5, 8.0, 4.0])
 _T_LIMIT = torch.tensor([8.0, 1.0, 1.0])
 
 
@@ -208,7 +208,6 @@ def _work(rank: int, job: _Job) -> None:
         network.train()
         total = 0.0
         bar = _progress(range(steps), f"pass {number + 1}/{settings.passes}: fit", rank == 0)
-        part = max(1, number - settings.first_passes) / max(1, settings.passes - settings.first_passes)
         for step in bar:
             mine = order[step * settings.batch : (step + 1) * settings.batch][rank :: job.processes]
             done = max(0, number - settings.first_passes) + step / steps

@@ -100,11 +100,13 @@ def train_model(
         settings = replace(settings, **_sizes(base.environment_model.arrays))
         before = _evaluate(compounds, graphs, held_out, base.environment_model.arrays)
         report(f"held out, before: {json.dumps(before)}")
-    report("substituent model")
-    chosen = [i for i, c in enumerate(compounds) if c.split == "train"]
-    some = np.random.default_rng(settings.random_seed).permutation(chosen)[:substituent_compounds]
-    substituent_model, _ = fit_to_peak_lists([compounds[i] for i in some], log=report)
-    first = None if start_from else [_predict_substituents(substituent_model, c.mol) for c in _progress(compounds)]
+    first = None
+    if not start_from:
+        report("substituent model, for the first assignment")
+        chosen = [i for i, c in enumerate(compounds) if c.split == "train"]
+        some = np.random.default_rng(settings.random_seed).permutation(chosen)[:substituent_compounds]
+        substituent_model, _ = fit_to_peak_lists([compounds[i] for i in some], log=report)
+        first = [_predict_substituents(substituent_model, c.mol) for c in _progress(compounds)]
     network = train_environment_model(compounds, settings, working, processes, report, starting, graphs, first)
     arrays = export_arrays(network)
     after = _evaluate(compounds, graphs, held_out, arrays)
