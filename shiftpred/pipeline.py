@@ -119,13 +119,15 @@ def explain(
     InputError, SettingError
         As for `predict`; also if the atom does not exist or has no such nucleus.
     """
-    from shiftpred.regression.explanation_parts import build_explanation_parts
+    from shiftpred.regression.explanation_parts import build_explanation_parts, build_measured_part
 
     bundle = load_model(model)
     read = parse_structure(structure)
     prediction = predict_structures([read], nucleus, solvent, coverage, bundle)[0]
     chosen, shift = select_nucleus(prediction, atom_index, nucleus)
-    parts = build_explanation_parts(read, chosen.atom_index, nucleus, bundle.substituent_model, shift, prediction.solvent)
+    parts = build_explanation_parts(
+        read, chosen.atom_index, nucleus, bundle.substituent_model, shift, prediction.solvent, build_measured_part(chosen)
+    )
     return Explanation(
         read,
         nucleus,

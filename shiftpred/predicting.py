@@ -5,16 +5,22 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 from itertools import islice
 
+import numpy as np
+
 from shiftpred.bundles import ModelBundle
+from shiftpred.calibration.error_size import ErrorSize
 from shiftpred.calibration.intervals import require_coverage
 from shiftpred.calibration.novelty import NEW_NEIGHBOURS, NEW_SURROUNDINGS, compute_surroundings_codes
 from shiftpred.errors import SettingError, quote
-from shiftpred.features.molecule_arrays import build_molecule_arrays, join_molecule_arrays
+from shiftpred.features.concentric_environments import RADII, compute_environment_codes
+from shiftpred.features.molecule_arrays import MoleculeArrays, build_molecule_arrays, join_molecule_arrays
 from shiftpred.features.solvents import SOLVENTS
 from shiftpred.records import MoleculePrediction, NucleusPrediction, RecordFailure, Structure
+from shiftpred.regression.environment_memory import EnvironmentMemory, Recollection
+from shiftpred.regression.environment_model import EnvironmentModel
 from shiftpred.structures.sites import compute_sites
 
-__all__ = ["predict_molecules", "require_nucleus", "select_nucleus"]
+__all__ = ["predict_molecules", "predict_values", "require_nucleus", "select_nucleus"]
 
 _BATCH = 64
 _NOVELTY_NOTE = {
@@ -99,21 +105,54 @@ def select_nucleus(prediction: MoleculePrediction, atom_index: int, nucleus: str
     return rows[0], sum(r.shift_ppm for r in rows) / len(rows)
 
 
+def predict_values(
+    graph: MoleculeArrays, network: EnvironmentModel, memory: EnvironmentMemory, error_size: ErrorSize, solvent: int = 0
+) -> tuple[np.ndarray, np.ndarray, Recollection]:
+    """Predict the atoms of a graph: network, memory of measured surroundings, solvent.
+
+    Parameters
+    ----------
+    graph : MoleculeArrays
+        Of one molecule or of several joined.
+    network, memory, error_size
+        Of a model.
+    solvent : int, default 0
+        Index into `SOLVENTS`; 0: not reported.
+
+    Returns
+    -------
+    values : ndarray of shape (n_atoms, 3)
+        13C shift, 1H shift, half gap of a CH2's hydrogens, in ppm; meaningful only where the atom is a carbon or bears a
+        hydrogen.
+    scales : ndarray of shape (n_atoms, 2)
+        Raw size of the error of 13C and 1H, in ppm, before calibration.
+    known : Recollection
+        What the memory contributed.
+    """
+    values, scales, inner = network.predict_raw(graph)
+    if solvent:
+        values[:, :2] += network.predict_solvent_effect(inner, solvent)
+    values, scales = values.astype(float), scales.astype(float)
+    known = memory.recall(compute_environment_codes(graph))
+    values[:, :2] += known.correction
+    return values, error_size.compute(scales, known), known
+
+
 def _predict_batch(batch, bundle, nuclei, known_solvent, solvent, coverage):
     graph, offsets = join_molecule_arrays([build_molecule_arrays(s.mol) for s in batch])
-    values, scales, inner = bundle.environment_model.predict_raw(graph)
-    if known_solvent:
-        values[:, :2] += bundle.environment_model.predict_solvent_effect(inner, SOLVENTS.index(known_solvent))
+    values, scales, known = predict_values(
+        graph, bundle.environment_model, bundle.memory, bundle.error_size, SOLVENTS.index(known_solvent) if known_solvent else 0
+    )
     levels = bundle.novelty.compute_levels(compute_surroundings_codes(graph))
-    # One answer on every machine and for every batch size: float32 sums differ in their last digits, four decimals do not.
-    values, scales = values.astype(float), scales.astype(float)
     for structure, begin, end in zip(batch, offsets[:-1], offsets[1:]):
+        part = slice(begin, end)
+        measured = known.correction[part], known.counts[part]
         yield _build_prediction(
-            structure, bundle, nuclei, solvent, coverage, values[begin:end], scales[begin:end], levels[begin:end]
+            structure, bundle, nuclei, solvent, coverage, values[part], scales[part], levels[part], measured
         )
 
 
-def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scales, levels):
+def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scales, levels, measured):
     sites = compute_sites(structure)
     rows: list[NucleusPrediction] = []
     for column, nucleus in enumerate(("13C", "1H")):
@@ -136,7 +175,10 @@ def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scal
                 placed = (("a", shift + gap), ("b", shift - gap))
             else:
                 placed = (("", shift),)
+            sites_alike, bonds_alike = _find_widest(measured[1][i, :, column])
             for hydrogen, ppm in placed:
+                # One answer on every machine and for every batch size: float32 sums differ in their last digits, four
+                # decimals do not.
                 ppm = round(ppm, 4)
                 rows.append(
                     NucleusPrediction(
@@ -155,9 +197,20 @@ def _build_prediction(structure, bundle, nuclei, solvent, coverage, values, scal
                         environment,
                         nucleus == "1H" and site.labile,
                         note,
+                        round(float(measured[0][i, column]), 4),
+                        sites_alike,
+                        bonds_alike,
                     )
                 )
     return MoleculePrediction(structure, sites, tuple(rows), solvent, bundle.edition, structure.notes)
+
+
+def _find_widest(counts: np.ndarray) -> tuple[int, int]:
+    """Return how many measured atoms are alike out to the largest number of bonds for which there are any, and that number."""
+    for k in range(RADII - 1, -1, -1):
+        if counts[k]:
+            return int(counts[k]), k + 1
+    return 0, 0
 
 
 def _average_over_equivalent(sites, values, scales):

@@ -96,6 +96,12 @@ class NucleusPrediction:
     labile: bool
     note: str
     """'' or words: unlike the training data, labile, coincides, …"""
+    measured_ppm: float = 0.0
+    """Part of `shift_ppm` that comes from training atoms measured in the same surroundings."""
+    measured_sites: int = 0
+    """How many such atoms there are; 0: none."""
+    measured_bonds: int = 0
+    """Bonds out to which their surroundings are the same."""
 
 
 @dataclass(frozen=True)
@@ -356,7 +362,7 @@ class Contribution:
     label: str
     """'base: sp3 CH2', 'alpha acetoxy', 'environment model, remainder', …"""
     kind: str
-    """'base', 'substituent', 'solvent' or 'remainder'."""
+    """'base', 'substituent', 'solvent', 'measured' or 'remainder'."""
     position: str
     """'alpha', 'beta', 'gamma' or ''."""
     group: str

@@ -13,16 +13,20 @@ from pathlib import Path
 import numpy as np
 
 from shiftpred.bundles.locations import find_models
+from shiftpred.calibration.error_size import ErrorSize
 from shiftpred.calibration.intervals import IntervalTable
 from shiftpred.calibration.novelty import NoveltyTable
 from shiftpred.errors import BundleError
+from shiftpred.regression.environment_memory import EnvironmentMemory
 from shiftpred.regression.environment_model import EnvironmentModel
 from shiftpred.regression.substituent_model import SubstituentModel
 
-__all__ = ["FORMAT", "ModelBundle", "load_bundle", "load_default_bundle", "save_bundle"]
+__all__ = ["FORMAT", "ModelBundle", "load_bundle", "load_default_bundle", "save_bundle", "save_judgement"]
 
-FORMAT = 1
-"""Number of the folder format; a reader refuses any other."""
+FORMAT = 2
+"""Number of the folder format that is written."""
+_READABLE = (1, 2)
+"""Formats that are read; 1 had no memory of measured surroundings."""
 _LARGEST_FILE = 64 * 1024 * 1024
 _ARRAYS, _CALIBRATION, _SUBSTITUENTS = "arrays.npz", "calibration.json", "substituent_model.npz"
 _CHECKED = (_ARRAYS, _CALIBRATION, _SUBSTITUENTS)
@@ -35,6 +39,8 @@ class ModelBundle:
     folder: Path
     manifest: dict
     environment_model: EnvironmentModel
+    memory: EnvironmentMemory
+    error_size: ErrorSize
     intervals: IntervalTable
     novelty: NoveltyTable
     judgement: dict = field(default_factory=dict)
@@ -60,6 +66,7 @@ def save_bundle(
     edition: str,
     network_arrays: dict[str, np.ndarray],
     novelty_arrays: dict[str, np.ndarray],
+    memory_arrays: dict[str, np.ndarray],
     calibration: dict,
     substituent_arrays: dict[str, np.ndarray],
     substituent_meta: dict,
@@ -72,10 +79,10 @@ def save_bundle(
     ----------
     folder : path
     name, edition : str
-    network_arrays, novelty_arrays, substituent_arrays : dict of str to ndarray
-        Plain numbers only.
+    network_arrays, novelty_arrays, memory_arrays, substituent_arrays : dict of str to ndarray
+        Plain numbers only. The network is stored in half precision: round its weights before anything is measured with it.
     calibration : dict
-        JSON-ready: 'intervals' (see `IntervalTable`) and, where it was fitted, 'judgement'.
+        JSON-ready: 'intervals' (see `IntervalTable`), 'error_size' (see `ErrorSize`) and, where it was fitted, 'judgement'.
     substituent_meta : dict
         JSON-ready.
     origin : dict
@@ -85,8 +92,9 @@ def save_bundle(
     """
     folder = Path(folder)
     folder.mkdir(parents=True, exist_ok=True)
-    small = {f"network/{k}": v.astype(np.float32) for k, v in network_arrays.items()}
+    small = {f"network/{k}": v.astype(np.float16) for k, v in network_arrays.items()}
     small |= {f"novelty/{k}": v for k, v in novelty_arrays.items()}
+    small |= {f"memory/{k}": v for k, v in memory_arrays.items()}
     meta = np.frombuffer(json.dumps(substituent_meta).encode(), dtype=np.uint8)
     contents = {
         _ARRAYS: _pack(small),
@@ -98,10 +106,18 @@ def save_bundle(
         _write(folder / file, content)
     manifest = dict(
         format=FORMAT, name=name, edition=edition, origin=origin,
-        files={f: dict(sha256=hashlib.sha256(contents[f]).hexdigest(), bytes=len(contents[f])) for f in _CHECKED},
+        files={f: _describe(contents[f]) for f in _CHECKED},
     )
-    _write(folder / "manifest.json", (json.dumps(manifest, indent=1) + "\n").encode())
+    _write(folder / "manifest.json", _render_manifest(manifest))
     return folder
+
+
+def _describe(content: bytes) -> dict:
+    return dict(sha256=hashlib.sha256(content).hexdigest(), bytes=len(content))
+
+
+def _render_manifest(manifest: dict) -> bytes:
+    return (json.dumps(manifest, indent=1) + "\n").encode()
 
 
 def load_bundle(folder: str | Path) -> ModelBundle:
@@ -123,9 +139,9 @@ def load_bundle(folder: str | Path) -> ModelBundle:
             str(folder / "manifest.json"), f"a damaged manifest ({error!r})", "the manifest that `shiftpred train` wrote",
             "install shiftpred again, or train the model anew",
         ) from None
-    if found != FORMAT:
+    if found not in _READABLE:
         raise BundleError(
-            str(folder / "manifest.json"), f"model format {found!r}", f"format {FORMAT}",
+            str(folder / "manifest.json"), f"model format {found!r}", f"format {' or '.join(map(str, _READABLE))}",
             "install the version of shiftpred that made this model" if isinstance(found, int) and found > FORMAT
             else "train the model anew with `shiftpred train`",
         )
@@ -140,13 +156,31 @@ def load_bundle(folder: str | Path) -> ModelBundle:
         checked[file] = content
     arrays = _unpack(checked[_ARRAYS], folder / _ARRAYS)
     calibration = json.loads(checked[_CALIBRATION])
+
+    def take(part: str) -> dict[str, np.ndarray]:
+        return {k.removeprefix(part): v for k, v in arrays.items() if k.startswith(part)}
+
     return ModelBundle(
         folder, manifest,
-        EnvironmentModel({k.removeprefix("network/"): v for k, v in arrays.items() if k.startswith("network/")}),
-        IntervalTable(calibration["intervals"]),
-        NoveltyTable(arrays["novelty/one_bond"], arrays["novelty/two_bonds"]),
-        calibration.get("judgement", {}),
+        EnvironmentModel(take("network/")), EnvironmentMemory(take("memory/")), ErrorSize(calibration.get("error_size")),
+        IntervalTable(calibration["intervals"]), NoveltyTable(**take("novelty/")), calibration.get("judgement", {}),
     )
+
+
+def save_judgement(parameters: dict, folder: str | Path) -> None:
+    """Put judgement parameters into a model folder's calibration file and renew its check sum in the manifest.
+
+    Raises
+    ------
+    BundleError
+        As `load_bundle`.
+    """
+    bundle = load_bundle(folder)
+    calibration = json.loads(_read_file(bundle.folder / _CALIBRATION)) | dict(judgement=parameters)
+    content = json.dumps(calibration, indent=1).encode()
+    files = bundle.manifest["files"] | {_CALIBRATION: _describe(content)}
+    _write(bundle.folder / _CALIBRATION, content)
+    _write(bundle.folder / "manifest.json", _render_manifest(bundle.manifest | dict(files=files)))
 
 
 @lru_cache(maxsize=1)

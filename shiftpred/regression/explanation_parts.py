@@ -8,11 +8,11 @@ import numpy as np
 from rdkit import Chem
 
 from shiftpred.features.site_rows import compute_site_class
-from shiftpred.records import NUCLEI, Contribution, Structure
+from shiftpred.records import NUCLEI, Contribution, NucleusPrediction, Structure
 from shiftpred.regression.substituent_model import SubstituentModel
 from shiftpred.substituents.group_codes import compute_group_codes
 
-__all__ = ["LARGE_QUANTILE", "LEAST_SITES", "build_explanation_parts", "compute_residual_scale"]
+__all__ = ["LARGE_QUANTILE", "LEAST_SITES", "build_explanation_parts", "build_measured_part", "compute_residual_scale"]
 
 LARGE_QUANTILE = 0.95
 """A remainder is called large beyond this quantile of |remainder| in its class of sites."""
@@ -27,6 +27,7 @@ def build_explanation_parts(
     model: SubstituentModel,
     total_shift: float,
     solvent: str | None = None,
+    measured: Contribution | None = None,
 ) -> tuple[Contribution, ...]:
     """List what makes up a predicted shift.
 
@@ -41,13 +42,15 @@ def build_explanation_parts(
         The full prediction in ppm.
     solvent : str or None, default None
         Short name, if the prediction was made for one.
+    measured : Contribution or None, default None
+        What training atoms measured in the same surroundings add (`build_measured_part`).
 
     Returns
     -------
     tuple of Contribution
-        Base, substituents at alpha, beta and gamma (and para), solvent, and last the remainder
-        total - substituent model, flagged 'large remainder' where it is beyond the 95th percentile of its class. They
-        add up to `total_shift`.
+        Base, substituents at alpha, beta and gamma (and para), solvent, measured surroundings, and last the remainder: what
+        the network sees beyond the substituents. 'large remainder' flags it where total - substituent model is beyond the 95th
+        percentile of its class. They add up to `total_shift`.
 
     Raises
     ------
@@ -72,8 +75,28 @@ def build_explanation_parts(
     scale = model.tables[nucleus].residual_scale
     usual = scale.get(coarse, scale.get("", float("inf")))
     flag = "large remainder" if abs(remainder) > usual else ""
+    if measured is not None:
+        lines.append(measured)
+        remainder -= measured.contribution_ppm
     lines.append(Contribution("environment model, remainder", "remainder", "", "", (), {}, remainder, flag))
     return tuple(lines)
+
+
+def build_measured_part(chosen: NucleusPrediction) -> Contribution | None:
+    """Return the line for training atoms that were measured in the same surroundings; None where there are none.
+
+    Examples
+    --------
+    >>> import shiftpred
+    >>> line = [part for part in shiftpred.explain("CCO", 0).contributions if part.kind == "measured"]
+    >>> len(line)
+    1
+    """
+    if not chosen.measured_sites:
+        return None
+    many = "1 training atom" if chosen.measured_sites == 1 else f"{chosen.measured_sites} training atoms"
+    bonds = "1 bond" if chosen.measured_bonds == 1 else f"{chosen.measured_bonds} bonds"
+    return Contribution(f"measured: {many} alike out to {bonds}", "measured", "", "", (), {}, chosen.measured_ppm)
 
 
 def compute_residual_scale(

@@ -28,8 +28,6 @@ class PeakPlacer:
     compound : Compound
     hydrogen_counts : bool, default True
         False ignores the hydrogen counts that the source states.
-    pairs : bool, default True
-        False lets the 13C and the 1H peak of one label go to different atoms (for counting how often they agree).
     """
 
     def __init__(self, compound: Compound, hydrogen_counts: bool = True):
@@ -45,7 +43,8 @@ class PeakPlacer:
             | ((kind >= 0)[:, None] & (kind[:, None] != n_h))
         )
         self.base = _FORBIDDEN * forbidden
-        self.observed = np.nan_to_num(np.stack([compound.c13, compound.h1], axis=1))
+        self.values = np.stack([compound.c13, compound.h1], axis=1)
+        self.observed = np.nan_to_num(self.values)
         self.group = np.array(list(Chem.CanonicalRankAtoms(mol, breakTies=False)))
         self.possible = len(compound.c13) <= self.n_atoms
         # Labels often follow the pen that drew the molecule: pairs of consecutive labels, and which atoms are bonded.
@@ -123,6 +122,10 @@ class PeakPlacer:
                     out[k] = free[0]
                     taken.add(free[0])
         return out
+
+    def place_observed(self, assignment: np.ndarray) -> np.ndarray:
+        """Return (n_atoms, 2) the compound's own 13C and 1H shifts on atoms (see `place`)."""
+        return self.place(self.values, assignment)
 
     def place(self, values: np.ndarray, assignment: np.ndarray) -> np.ndarray:
         """Put site values on atoms and average them over equivalent atoms.

@@ -8,7 +8,6 @@ the split 'calibration' fit the map; those of 'test' are only looked at with --t
 from __future__ import annotations
 
 import argparse
-import hashlib
 import json
 import sys
 import time
@@ -19,10 +18,9 @@ from pathlib import Path
 import numpy as np
 import pandas as pd
 from rdkit import Chem, RDLogger
-from tqdm import tqdm
 
 from shiftpred.assignment import assign_structure, prepare_peaks
-from shiftpred.bundles import ModelBundle, load_bundle
+from shiftpred.bundles import ModelBundle, load_bundle, save_judgement
 from shiftpred.judgement.calibrating import (
     JudgementCase,
     compute_rates,
@@ -41,8 +39,9 @@ from shiftpred.structures import parse_structure
 from shiftpred.structures.rivals import build_rivals
 from shiftpred.training.corrupt_lists import CORRUPTIONS, corrupt_carbon_list, corrupt_hydrogen_list
 from shiftpred.training.open_tables import compute_split, connectivity
+from shiftpred.training.progress import show_progress
 
-__all__ = ["Sample", "build_cases", "calibrate_judgement", "load_samples", "store_in_bundle"]
+__all__ = ["Sample", "build_cases", "calibrate_judgement", "load_samples"]
 
 _FEWEST_LINES = 4
 _LARGEST_ATOMS = 45
@@ -131,7 +130,7 @@ def build_cases(
     seed : int
     """  # fmt: skip
     samples, corruptions = list(samples), [c for c in corruptions if c]
-    for number, sample in enumerate(tqdm(samples, desc="cases", disable=not sys.stderr.isatty())):
+    for number, sample in enumerate(show_progress(samples, "cases")):
         random = np.random.default_rng([seed, sample.compound])
         proposals = _choose_proposals(sample, samples, number, n_rivals, mass_confirmed, random)
         candidates = {kind: [parse_structure(s) for s in listed] for kind, listed in proposals.items()}
@@ -218,18 +217,6 @@ def calibrate_judgement(
     return parameters
 
 
-def store_in_bundle(parameters: dict, folder: str | Path) -> None:
-    """Put judgement parameters into a model folder's calibration file and renew its check sum in the manifest."""
-    folder = Path(folder)
-    calibration = json.loads((folder / "calibration.json").read_text(encoding="utf-8"))
-    calibration["judgement"] = parameters
-    content = json.dumps(calibration, indent=1).encode()
-    manifest = json.loads((folder / "manifest.json").read_text(encoding="utf-8"))
-    manifest["files"]["calibration.json"] = dict(sha256=hashlib.sha256(content).hexdigest(), bytes=len(content))
-    (folder / "calibration.json").write_bytes(content)
-    (folder / "manifest.json").write_text(json.dumps(manifest, indent=1) + "\n", encoding="utf-8")
-
-
 def main(arguments: list[str] | None = None) -> int:
     """Run from the command line."""
     RDLogger.DisableLog("rdApp.*")
@@ -257,7 +244,7 @@ def main(arguments: list[str] | None = None) -> int:
     if asked.output:
         Path(asked.output).write_text(json.dumps(parameters, indent=1), encoding="utf-8")
     if asked.store and not asked.test:
-        store_in_bundle(parameters, asked.model)
+        save_judgement(parameters, asked.model)
     return 0
 
 

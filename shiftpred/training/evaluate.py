@@ -27,7 +27,6 @@ from shiftpred.training.evaluation_sites import (
     count_pair_agreement,
     place_training_peaks,
     predict_compounds,
-    show_progress,
 )
 from shiftpred.training.evaluation_statistics import (
     compute_coverage_figures,
@@ -39,6 +38,7 @@ from shiftpred.training.evaluation_statistics import (
 from shiftpred.training.evaluation_text import render_evaluation
 from shiftpred.training.measured_shifts import compare_with_measured, load_measured_connectivities
 from shiftpred.training.open_tables import Compound, load_open_tables
+from shiftpred.training.progress import show_progress
 
 __all__ = ["SPLIT_CHOICES", "compute_width_ratio", "evaluate_model"]
 

@@ -2,22 +2,22 @@
 
 from __future__ import annotations
 
-import sys
 from collections.abc import Iterable, Mapping
 from dataclasses import replace
 
 import numpy as np
 import pandas as pd
-from tqdm import tqdm
 
 from shiftpred.bundles import ModelBundle
-from shiftpred.features.molecule_arrays import MoleculeArrays, build_molecule_arrays, join_molecule_arrays
+from shiftpred.features.molecule_arrays import build_molecule_arrays
 from shiftpred.pipeline import iterate_predictions
 from shiftpred.records import MoleculePrediction
 from shiftpred.regression.environment_model import EnvironmentModel
 from shiftpred.structures.reading import parse_structure
 from shiftpred.training.assign_open_peaks import PeakPlacer
 from shiftpred.training.open_tables import Compound
+from shiftpred.training.predict_graphs import predict_shifts
+from shiftpred.training.progress import show_progress
 
 __all__ = [
     "CAP_PPM",
@@ -26,9 +26,7 @@ __all__ = [
     "compare_geminal_hydrogens",
     "count_pair_agreement",
     "place_training_peaks",
-    "predict_arrays",
     "predict_compounds",
-    "show_progress",
 ]
 
 CAP_PPM = (40.0, 4.0)
@@ -78,24 +76,14 @@ def predict_compounds(compounds: Iterable[Compound], bundle: ModelBundle, covera
     return [SiteTable(p, c.mol.GetNumAtoms()) for c, p in zip(compounds, show_progress(predictions, "predict", len(compounds)))]
 
 
-def predict_arrays(model: EnvironmentModel, graphs: Iterable[MoleculeArrays]) -> list[np.ndarray]:
-    """Return (n_atoms, 2) 13C and 1H in ppm for every graph, straight from the network."""
-    graphs, out = list(graphs), []
-    for begin in range(0, len(graphs), _BATCH):
-        joined, offsets = join_molecule_arrays(graphs[begin : begin + _BATCH])
-        values = model.predict_raw(joined)[0][:, :2].astype(float)
-        out += np.split(values, offsets[1:-1])
-    return out
-
-
 def place_training_peaks(compounds: list[Compound], model: EnvironmentModel) -> list[np.ndarray]:
     """Assign the peaks of training compounds with the model: (n_atoms, 2) observed 13C and 1H on atoms, nan where none."""
     out = []
     for begin in show_progress(range(0, len(compounds), _BATCH), "assign training peaks"):
         batch = compounds[begin : begin + _BATCH]
-        for compound, values in zip(batch, predict_arrays(model, [build_molecule_arrays(c.mol) for c in batch])):
+        for compound, values in zip(batch, predict_shifts([build_molecule_arrays(c.mol) for c in batch], model)):
             placer = PeakPlacer(compound)
-            out.append(placer.place(_observed(compound), placer.assign(values)))
+            out.append(placer.place_observed(placer.assign(values)))
     return out
 
 
@@ -131,12 +119,11 @@ def collect_sites(
     own_rows: dict[str, list[tuple]] = {name: [] for name in baselines}
     for number, (compound, table) in enumerate(zip(show_progress(compounds, "assign", len(compounds)), tables)):
         placer = PeakPlacer(compound, hydrogen_counts)
-        observed = _observed(compound)
-        placed = placer.place(observed, placer.assign(table.shift))
+        placed = placer.place_observed(placer.assign(table.shift))
         known = ~np.isnan(placed)
         if not known.any():
             continue
-        certain = ~np.isnan(placer.place(observed, placer.assign_unambiguous()))
+        certain = ~np.isnan(placer.place_observed(placer.assign_unambiguous()))
         symbols = [a.GetSymbol() for a in compound.mol.GetAtoms()]
         elements = " ".join(sorted(set(symbols)))
         values = [baselines[name][number] for name in baselines]
@@ -160,7 +147,7 @@ def collect_sites(
                 )
             )
         for name, v in zip(baselines, values):
-            by_own = placer.place(observed, placer.assign(v))
+            by_own = placer.place_observed(placer.assign(v))
             error = np.where(np.isnan(v), CAP_PPM, np.minimum(np.abs(by_own - v), 1e6))
             for i, k in zip(*np.nonzero(~np.isnan(by_own))):
                 own_rows[name].append((_NUCLEI[k], symbols[i], error[i, k]))
@@ -262,11 +249,3 @@ def _keep(compound: Compound, which: np.ndarray, h1: bool) -> Compound:
         samples=[],
     )
 
-
-def _observed(compound: Compound) -> np.ndarray:
-    return np.stack([compound.c13, compound.h1], axis=1)
-
-
-def show_progress(items, what: str, total: int | None = None):
-    """Wrap an iterable in a progress bar where somebody is looking."""
-    return tqdm(items, desc=what, total=total, leave=False, disable=not sys.stderr.isatty())

@@ -25,9 +25,10 @@ from rdkit import Chem
 from shiftpred.errors import BundleError
 from shiftpred.features.molecule_arrays import ATOM_FEATURES, BOND_FEATURES, MoleculeArrays, build_molecule_arrays
 from shiftpred.regression.environment_model import EnvironmentModel
-from shiftpred.training.evaluation_sites import predict_arrays, show_progress
 from shiftpred.training.measured_shifts import load_measured_connectivities
 from shiftpred.training.open_tables import load_open_tables
+from shiftpred.training.predict_graphs import predict_shifts
+from shiftpred.training.progress import show_progress
 
 __all__ = ["build_plain_arrays", "load_plain_network", "predict_plain", "train_plain_network"]
 
@@ -83,7 +84,7 @@ def predict_plain(model: EnvironmentModel, mols: Iterable[Chem.Mol]) -> list[np.
         13C and 1H in ppm.
     """
     mols = list(mols)
-    return predict_arrays(model, [build_plain_arrays(m) for m in show_progress(mols, "plain network", len(mols))])
+    return predict_shifts([build_plain_arrays(m) for m in show_progress(mols, "plain network", len(mols))], model)
 
 
 def train_plain_network(
@@ -138,7 +139,7 @@ def train_plain_network(
     for split in ("calibration", "test"):
         chosen = [i for i, c in enumerate(compounds) if c.split == split]
         cases = []
-        for i, values in zip(chosen, predict_arrays(model, [graphs[i] for i in chosen])):
+        for i, values in zip(chosen, predict_shifts([graphs[i] for i in chosen], model)):
             placer = PeakPlacer(compounds[i])
             cases.append((placer, compounds[i], placer.assign(values), values))
         if cases:

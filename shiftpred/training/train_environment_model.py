@@ -11,7 +11,6 @@ import json
 import math
 import os
 import socket
-import sys
 import time
 from dataclasses import asdict, dataclass
 from pathlib import Path
@@ -19,15 +18,16 @@ from pathlib import Path
 import numpy as np
 import torch
 import torch.distributed as distributed
-from tqdm import tqdm
 
 from shiftpred.features.molecule_arrays import MoleculeArrays, build_molecule_arrays, join_molecule_arrays
 from shiftpred.regression.environment_model import OUTPUT_CENTRE, OUTPUT_UNIT
 from shiftpred.training.assign_open_peaks import PeakPlacer
 from shiftpred.training.network import EnvironmentNetwork
 from shiftpred.training.open_tables import Compound
+from shiftpred.training.progress import show_progress
 
-__all__ = ["NetworkSettings", "build_graphs", "build_network", "compute_errors", "is_strange", "predict_compounds",
+__all__ = ["NetworkSettings", "build_graphs", "build_network", "compute_errors", "count_finished_passes", "is_strange",
+           "predict_compounds",
            "train_environment_model"]
 
 
@@ -75,7 +75,7 @@ def build_graphs(compounds: list[Compound], settings: NetworkSettings) -> list[M
     """Turn the compounds' structures into arrays."""
     return [
         build_molecule_arrays(c.mol, settings.electronic, settings.stereo)
-        for c in _progress(compounds, "molecules to arrays")
+        for c in show_progress(compounds, "molecules to arrays")
     ]
 
 
@@ -132,6 +132,15 @@ def train_environment_model(
     return network
 
 
+def count_finished_passes(folder: str | Path, settings: NetworkSettings) -> int:
+    """Return after which pass a run with these very settings was stopped in `folder`; 0: there is none to go on from."""
+    checkpoint = Path(folder) / "checkpoint.pt"
+    if not checkpoint.exists():
+        return 0
+    state = torch.load(checkpoint, weights_only=True)
+    return state["pass"] if state["settings"] == json.dumps(asdict(settings)) else 0
+
+
 @dataclass
 class _Job:
     compounds: list
@@ -167,16 +176,14 @@ def _work(rank: int, job: _Job) -> None:
     optimiser = torch.optim.AdamW(
         network.parameters(), lr=settings.learning_rate, weight_decay=settings.weight_decay, foreach=True
     )
-    first = 0
     checkpoint = job.folder / "checkpoint.pt"
-    if checkpoint.exists():
+    first = count_finished_passes(job.folder, settings)
+    if first:
         state = torch.load(checkpoint, weights_only=True)
-        if state["settings"] == json.dumps(asdict(settings)):
-            for thing, name in ((network, "network"), (average, "average"), (optimiser, "optimiser")):
-                thing.load_state_dict(state[name])
-            first = state["pass"]
-            if rank == 0:
-                job.report(f"going on after pass {first}")
+        for thing, name in ((network, "network"), (average, "average"), (optimiser, "optimiser")):
+            thing.load_state_dict(state[name])
+        if rank == 0:
+            job.report(f"going on after pass {first}")
     placers = [PeakPlacer(c) for c in job.compounds]
     train = [i for i, c in enumerate(job.compounds) if c.split == "train"]
     watch = [i for i, c in enumerate(job.compounds) if c.split == "calibration"]
@@ -207,7 +214,7 @@ def _work(rank: int, job: _Job) -> None:
         steps = math.ceil(len(order) / settings.batch)
         network.train()
         total = 0.0
-        bar = _progress(range(steps), f"pass {number + 1}/{settings.passes}: fit", rank == 0)
+        bar = show_progress(range(steps), f"pass {number + 1}/{settings.passes}: fit", wanted=rank == 0)
         for step in bar:
             mine = order[step * settings.batch : (step + 1) * settings.batch][rank :: job.processes]
             done = max(0, number - settings.first_passes) + step / steps
@@ -248,10 +255,6 @@ def _work(rank: int, job: _Job) -> None:
 def _schedule(part: float) -> float:
     """Return the share of the learning rate at `part` (0 to 1) of the run: a short rise, then a cosine down to nothing."""
     return min(1.0, part / 0.02 + 0.05) * 0.5 * (1 + math.cos(math.pi * min(1.0, part)))
-
-
-def _progress(items, what, wanted=True):
-    return tqdm(items, desc=what, leave=False, disable=not (wanted and sys.stderr.isatty()))
 
 
 def _assign_all(model, job, placers, watch, rank, label_order, what):
@@ -363,7 +366,7 @@ def predict_compounds(network, graphs, settings, batch: int = 128, progress: str
     network.eval()
     order = np.argsort([len(g.atoms) for g in graphs], kind="stable")
     result: list[np.ndarray | None] = [None] * len(graphs)
-    for begin in _progress(range(0, len(order), batch), progress):
+    for begin in show_progress(range(0, len(order), batch), progress):
         chosen = order[begin : begin + batch]
         arrays = _padded([graphs[i] for i in chosen])
         sizes = [len(graphs[i].atoms) for i in chosen]
@@ -384,7 +387,7 @@ def compute_errors(cases) -> dict[str, float]:
     """Mean and median absolute errors after the best assignment, over atoms; 1H on carbon only."""
     errors = {"13C": [], "1H": []}
     for placer, compound, assignment, predicted in cases:
-        y = placer.place(np.stack([compound.c13, compound.h1], axis=1), assignment)
+        y = placer.place_observed(assignment)
         e = np.abs(y - predicted[:, :2])
         errors["13C"].append(e[~np.isnan(e[:, 0]), 0])
         on_carbon = np.array([a.GetAtomicNum() == 6 for a in compound.mol.GetAtoms()])

@@ -5,7 +5,6 @@ from __future__ import annotations
 import hashlib
 import json
 import platform
-import sys
 import time
 from collections.abc import Callable
 from dataclasses import asdict, replace
@@ -13,31 +12,32 @@ from importlib.metadata import version
 from pathlib import Path
 
 import numpy as np
-from rdkit import Chem
-from tqdm import tqdm
 
 from shiftpred.bundles import load_bundle, save_bundle
-from shiftpred.bundles.locations import find_datasets
-from shiftpred.calibration.novelty import NoveltyTable
-from shiftpred.errors import InputError, SettingError
-from shiftpred.features.molecule_arrays import join_molecule_arrays
-from shiftpred.features.solvents import SOLVENTS
+from shiftpred.errors import InputError
 from shiftpred.regression.environment_model import EnvironmentModel
-from shiftpred.regression.explanation_parts import compute_residual_scale
-from shiftpred.training.assign_open_peaks import PeakPlacer
-from shiftpred.training.fit_calibration import build_novelty_arrays, fit_calibration
-from shiftpred.training.fit_substituent_model import fit_substituent_model, fit_to_peak_lists
+from shiftpred.training.assemble_model import (
+    build_calibration,
+    build_memory,
+    build_substituents,
+    compute_held_out_errors,
+    place_peaks,
+    render_set_aside,
+)
+from shiftpred.training.fit_substituent_model import fit_to_peak_lists
+from shiftpred.training.measured_shifts import load_measured_connectivities
 from shiftpred.training.network import build_state, export_arrays
-from shiftpred.training.open_tables import Compound, connectivity, load_open_tables
+from shiftpred.training.open_tables import load_open_tables
+from shiftpred.training.predict_graphs import predict_graphs
+from shiftpred.training.progress import show_progress
 from shiftpred.training.train_environment_model import (
     NetworkSettings,
     build_graphs,
-    compute_errors,
-    is_strange,
+    count_finished_passes,
     train_environment_model,
 )
 
-__all__ = ["build_bundle", "load_measured_connectivities", "predict_with_arrays", "train_model"]
+__all__ = ["train_model"]
 
 _FEWEST_COMPOUNDS = 50
 
@@ -66,7 +66,7 @@ def train_model(
     settings : NetworkSettings, optional
     processes : int, default 2
     substituent_compounds : int, default 12000
-        Compounds that the substituent model is fitted to.
+        Compounds that the first assignment's substituent model is fitted to.
     report : callable
         Gets one line for each step.
 
@@ -89,180 +89,83 @@ def train_model(
             f"at least {_FEWEST_COMPOUNDS} and 5",
             "add compounds; a small archive is best trained with --start-from",
         )
-    starting, before = None, {}
     graphs = build_graphs(compounds, settings)
-    held_out = [i for i, c in enumerate(compounds) if c.split == "test"] or [
-        i for i, c in enumerate(compounds) if c.split == "calibration"
-    ]
+    train, calibration, test = ([i for i, c in enumerate(compounds) if c.split == s] for s in ("train", "calibration", "test"))
+    held_out = test or calibration
+
+    def choose(which):
+        return [compounds[i] for i in which], [graphs[i] for i in which]
+
+    base, starting, first, before = None, None, None, {}
     if start_from:
         base = load_bundle(start_from)
         starting = build_state(base.environment_model.arrays)
         settings = replace(settings, **_sizes(base.environment_model.arrays))
-        before = _evaluate(compounds, graphs, held_out, base.environment_model.arrays)
+        before = compute_held_out_errors(*choose(held_out), base.environment_model, base.memory)
         report(f"held out, before: {json.dumps(before)}")
-    first = None
-    if not start_from:
+    elif count_finished_passes(working, settings) < settings.first_passes:
         report("substituent model, for the first assignment")
-        chosen = [i for i, c in enumerate(compounds) if c.split == "train"]
-        some = np.random.default_rng(settings.random_seed).permutation(chosen)[:substituent_compounds]
-        substituent_model, _ = fit_to_peak_lists([compounds[i] for i in some], log=report)
-        first = [_predict_substituents(substituent_model, c.mol) for c in _progress(compounds)]
-    network = train_environment_model(compounds, settings, working, processes, report, starting, graphs, first)
-    arrays = export_arrays(network)
-    after = _evaluate(compounds, graphs, held_out, arrays)
+        some = np.random.default_rng(settings.random_seed).permutation(train)[:substituent_compounds]
+        first_model, _ = fit_to_peak_lists([compounds[i] for i in some], log=report)
+        first = [_predict_substituents(first_model, c.mol) for c in show_progress(compounds, "first assignment")]
+    trained = train_environment_model(compounds, settings, working, processes, report, starting, graphs, first)
+    arrays = _round_weights(export_arrays(trained))
+    network = EnvironmentModel(arrays)
+    report("memory of measured surroundings")
+    train_compounds, train_graphs = choose(train)
+    predicted = predict_graphs(train_graphs, network)
+    placed = place_peaks(train_compounds, predicted, settings.label_order)
+    memory = build_memory(train_graphs, predicted, placed, base)
+    alone = compute_held_out_errors(*choose(held_out), network)
+    after = compute_held_out_errors(*choose(held_out), network, memory)
+    report(f"held out, network alone: {json.dumps(alone)}")
     report(f"held out, after: {json.dumps(after)}")
-    log = (working / "rounds.jsonl").read_text(encoding="utf-8")
+    report("intervals")
+    fitted, novelty_arrays = build_calibration(*choose(calibration), network, memory, train_graphs, base)
+    if base:
+        substituents = base.substituent_model
+    else:
+        report("substituent model, from the network's assignments")
+        held_compounds, held_graphs = choose(calibration)
+        held_predicted = predict_graphs(held_graphs, network, memory)
+        substituents = build_substituents(train_compounds, placed, held_compounds, held_predicted)
+    substituent_arrays, substituent_meta = substituents.to_arrays()
     origin = dict(
         tables={p.name: hashlib.sha256(p.read_bytes()).hexdigest() for p in sorted(tables.glob("*.csv*"))},
         compounds=counts,
         settings=asdict(settings),
-        started_from=str(start_from) if start_from else None,
+        started_from=base.edition if base else None,
         versions={p: version(p) for p in ("numpy", "rdkit", "scikit-learn", "torch")} | {"python": platform.python_version()},
         minutes=round((time.time() - begun) / 60, 1),
-        held_out=dict(before=before, after=after),
+        held_out=dict(before=before, network_alone=alone, after=after),
     )
-    build_bundle(output, compounds, graphs, arrays, origin, log, substituent_compounds, report)
-    report(f"written to {output} after {(time.time() - begun) / 60:.0f} min")
-    return dict(before=before, after=after)
-
-
-def build_bundle(
-    output: Path,
-    compounds: list[Compound],
-    graphs,
-    arrays: dict[str, np.ndarray],
-    origin: dict,
-    log: str,
-    substituent_compounds: int = 12000,
-    report: Callable[[str], None] = print,
-) -> None:
-    """Calibrate a trained network, fit the substituent model to its assignments, and write the model folder.
-
-    Parameters
-    ----------
-    output : path
-    compounds : list of Compound
-    graphs : list of MoleculeArrays
-        Of the compounds.
-    arrays : dict of str to ndarray
-        The network's weights from `export_arrays`.
-    origin : dict
-        JSON-ready; `settings.random_seed` is used.
-    log : str
-        The rounds of assignment, one JSON object a line.
-    substituent_compounds : int
-        Compounds that the substituent model is fitted to.
-    report : callable
-    """
-    train = [i for i, c in enumerate(compounds) if c.split == "train"]
-    calibration = [i for i, c in enumerate(compounds) if c.split == "calibration"]
-    predicted = dict(zip(train + calibration, predict_with_arrays(arrays, [graphs[i] for i in train + calibration])))
-    report("calibrating intervals")
-    novelty_arrays = build_novelty_arrays([graphs[i] for i in train])
-    intervals = fit_calibration(
-        [compounds[i] for i in calibration],
-        [graphs[i] for i in calibration],
-        [predicted[i] for i in calibration],
-        NoveltyTable(**novelty_arrays),
-    )
-    report("fitting the substituent model to the network's assignments")
-    some = np.random.default_rng(origin["settings"]["random_seed"]).permutation(train)[:substituent_compounds]
-    model = fit_substituent_model(
-        [compounds[i].mol for i in some],
-        [_place(compounds[i], predicted[i]) for i in some],
-        solvents=[_only_solvent(compounds[i]) for i in some],
-    )
-    scale = compute_residual_scale(
-        model, [compounds[i].mol for i in calibration], [_mask(compounds[i], predicted[i]) for i in calibration]
-    )
-    for nucleus, table in scale.items():
-        model.set_residual_scale(nucleus, table)
-    substituent_arrays, substituent_meta = model.to_arrays()
-    set_aside = _list_set_aside([compounds[i] for i in train], [predicted[i] for i in train])
     save_bundle(
         output,
         name=output.name,
         edition=time.strftime("%Y.%m.%d"),
         network_arrays=arrays,
         novelty_arrays=novelty_arrays,
-        calibration=dict(intervals=intervals),
+        memory_arrays=memory.arrays,
+        calibration=fitted | (dict(judgement=base.judgement) if base and base.judgement else {}),
         substituent_arrays=substituent_arrays,
         substituent_meta=substituent_meta,
         origin=origin,
-        texts={"rounds.jsonl": log, "set_aside.csv": set_aside},
+        texts={
+            "rounds.jsonl": (working / "rounds.jsonl").read_text(encoding="utf-8"),
+            "set_aside.csv": render_set_aside(train_compounds, predicted, placed),
+        },
     )
+    report(f"written to {output} after {(time.time() - begun) / 60:.0f} min")
+    return dict(before=before, after=after)
 
 
 def _predict_substituents(model, mol) -> np.ndarray:
     return np.stack([model.predict(mol, "13C"), model.predict(mol, "1H")], axis=1)
 
 
-def _only_solvent(compound: Compound) -> str | None:
-    """Return the compound's solvent where all its peaks were measured in one that is known."""
-    names = {SOLVENTS[k] for k, _ in compound.samples}
-    return names.pop() or None if len(names) == 1 else None
-
-
-def _mask(compound: Compound, predicted: np.ndarray) -> np.ndarray:
-    """Return (n_atoms, 2) predicted shifts with nan where the atom has no such nucleus."""
-    out = predicted[:, :2].copy()
-    for atom in compound.mol.GetAtoms():
-        if atom.GetAtomicNum() != 6:
-            out[atom.GetIdx(), 0] = np.nan
-        if atom.GetTotalNumHs() == 0:
-            out[atom.GetIdx(), 1] = np.nan
-    return out
-
-
-def _progress(items):
-    return tqdm(items, desc="first assignment", leave=False, disable=not sys.stderr.isatty())
-
-
-def load_measured_connectivities() -> frozenset[str]:
-    """Return the connectivities of the measured shifts that models are checked against; they are never trained on."""
-    path = find_datasets() / "measured_shifts" / "assigned_shifts.csv"
-    if not path.exists():
-        raise SettingError(str(path), "no such file", "the reference shifts shipped with shiftpred", "reinstall shiftpred")
-    import pandas as pd
-
-    smiles = pd.read_csv(path).smiles.unique()
-    return frozenset(connectivity(Chem.MolFromSmiles(s)) for s in smiles)
-
-
-def predict_with_arrays(arrays: dict[str, np.ndarray], graphs, solvent: int = 0, batch: int = 64) -> list[np.ndarray]:
-    """Predict as the shipped model does: (n_atoms, 5) 13C, 1H, half gap, raw scales of 13C and 1H for every graph, ppm."""
-    model, out = EnvironmentModel(arrays), []
-    for begin in tqdm(range(0, len(graphs), batch), desc="predict", leave=False, disable=not sys.stderr.isatty()):
-        joined, offsets = join_molecule_arrays(graphs[begin : begin + batch])
-        values, scales, inner = model.predict_raw(joined)
-        if solvent:
-            values[:, :2] += model.predict_solvent_effect(inner, solvent)
-        out += np.split(np.concatenate([values, scales], axis=1).astype(float), offsets[1:-1])
-    return out
-
-
-def _evaluate(compounds: list[Compound], graphs, which, arrays) -> dict:
-    cases = []
-    for i, values in zip(which, predict_with_arrays(arrays, [graphs[i] for i in which])):
-        placer = PeakPlacer(compounds[i])
-        cases.append((placer, compounds[i], placer.assign(values[:, :2]), values))
-    return {**compute_errors(cases), "compounds": len(which)}
-
-
-def _place(compound: Compound, predicted: np.ndarray) -> np.ndarray:
-    placer = PeakPlacer(compound)
-    return placer.place(np.stack([compound.c13, compound.h1], axis=1), placer.assign(predicted[:, :2]))
-
-
-def _list_set_aside(compounds: list[Compound], predicted: list[np.ndarray]) -> str:
-    """List training compounds whose peaks fit far worse than the rest: probably wrong spectra or structures."""
-    lines = ["compound,mean_13C_error_ppm,smiles"]
-    for compound, values in zip(compounds, predicted):
-        if is_strange(compound, PeakPlacer(compound).assign(values[:, :2]), values):
-            error = np.abs(_place(compound, values)[:, 0] - values[:, 0])
-            mean = "" if np.isnan(error).all() else f"{np.nanmean(error):.2f}"
-            lines.append(f"{compound.key},{mean},{compound.smiles}")
-    return "\n".join(lines) + "\n"
+def _round_weights(arrays: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
+    """Return the weights as a model folder keeps them, so that what is measured here is what is shipped."""
+    return {name: values.astype(np.float16).astype(np.float32) for name, values in arrays.items()}
 
 
 def _sizes(arrays) -> dict[str, int]:

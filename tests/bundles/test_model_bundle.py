@@ -5,7 +5,7 @@ import shutil
 
 import pytest
 
-from shiftpred.bundles import load_bundle
+from shiftpred.bundles import load_bundle, save_judgement
 from shiftpred.errors import BundleError
 
 
@@ -59,3 +59,13 @@ def test_shipped_model_is_small_and_states_its_origin(shipped_model):
     assert size < 15_000_000
     origin = shipped_model.manifest["origin"]
     assert all(len(v) == 64 for v in origin["tables"].values()) and origin["settings"]["random_seed"] is not None
+
+
+def test_a_new_judgement_is_stored_and_the_rest_stays(tmp_path, shipped_model):
+    folder = tmp_path / "model"
+    shutil.copytree(shipped_model.folder, folder)
+    save_judgement({"prior": 0.25}, folder)
+    again = load_bundle(folder)
+    assert again.judgement == {"prior": 0.25}
+    assert again.intervals.tables == shipped_model.intervals.tables
+    assert {p.name for p in folder.iterdir()} == {p.name for p in shipped_model.folder.iterdir()}
