@@ -54,6 +54,8 @@ class JudgementCase:
     """The proposal, then its rivals."""
     rank: int = 0
     """'right' only: 1-based rank of the right structure among itself and its rivals."""
+    rank_of_constitution: int = 0
+    """The same among those rivals that differ in constitution, stereoisomers left out."""
 
     @property
     def features(self) -> np.ndarray:
@@ -177,10 +179,11 @@ def compute_rates(cases: Sequence[JudgementCase], judgement_map: JudgementMap, p
         verdicts = {k: [] for k in KINDS}
         for case in members:
             verdicts[case.kind].append(decide_judgement(case.summaries, case.lists, judgement_map, prior)[0])
-        ranked = [c.rank for c in members if c.kind == "right" and len(c.summaries) > 1]
+        ranked = [c for c in members if c.kind == "right" and len(c.summaries) > 1]
         rows = [
-            ("right structure first among its rivals", sum(r == 1 for r in ranked), len(ranked)),
-            ("right structure among the first three", sum(r <= 3 for r in ranked), len(ranked)),
+            ("right structure first among its rivals", sum(c.rank == 1 for c in ranked), len(ranked)),
+            ("the same, rivals of another constitution", sum(c.rank_of_constitution == 1 for c in ranked), len(ranked)),
+            ("right structure among the first three", sum(c.rank <= 3 for c in ranked), len(ranked)),
             *(
                 (f"{kind} called {verdict}", verdicts[kind].count(verdict), len(verdicts[kind]))
                 for kind in KINDS

@@ -135,6 +135,8 @@ def build_cases(
         proposals = _choose_proposals(sample, samples, number, n_rivals, mass_confirmed, random)
         candidates = {kind: [parse_structure(s) for s in listed] for kind, listed in proposals.items()}
         flat: list[Structure] = [s for listed in candidates.values() for s in listed]
+        own = connectivity(candidates["right"][0].mol)
+        other_constitution = [connectivity(s.mol) != own for s in candidates["right"][1:]]
         solvent = sample.solvent if sample.solvent not in ("other", "mixture", "neat") else None
         predictions = dict(zip(candidates, _cut(list(predict_molecules(flat, bundle, "both", solvent)), candidates)))
         done = ["", *([corruptions[number % len(corruptions)]] if corruptions else [])]
@@ -146,8 +148,11 @@ def build_cases(
                 ready = prepare_peaks({n: peaks[n] for n in lists.split("+")}, solvent)
                 for kind, predicted in predictions.items():
                     summaries = tuple(compute_fit_summary(assign_structure(p, ready)) for p in predicted)
-                    rank = 1 + sum(s.log_evidence >= summaries[0].log_evidence for s in summaries[1:])
-                    yield JudgementCase(sample.compound, kind, lists, corruption, summaries, rank if kind == "right" else 0)
+                    ranks = (0, 0)
+                    if kind == "right":
+                        ahead = [s.log_evidence >= summaries[0].log_evidence for s in summaries[1:]]
+                        ranks = 1 + sum(ahead), 1 + sum(a and o for a, o in zip(ahead, other_constitution))
+                    yield JudgementCase(sample.compound, kind, lists, corruption, summaries, *ranks)
 
 
 def _choose_proposals(sample, samples, number, n_rivals, mass_confirmed, random) -> dict[str, list[str]]:
@@ -237,10 +242,13 @@ def main(arguments: list[str] | None = None) -> int:
     fitted = build_judgement_map(parameters)
     rates = compute_rates(cases, fitted)
     print(render_rates(rates))
-    if asked.test:
-        print(render_reliability(compute_reliability(cases, fitted)))
     parameters = dict(parameters)
-    parameters["cases" if not asked.test else "test_cases"] = dict(parameters.get("cases", {}), rates=rates)
+    if asked.test:
+        curve = compute_reliability(cases, fitted)
+        print(render_reliability(curve))
+        parameters["test_cases"] = dict(samples=len(samples), cases=len(cases), reliability=curve, rates=rates)
+    else:
+        parameters["cases"] = dict(parameters["cases"], rates=rates)
     if asked.output:
         Path(asked.output).write_text(json.dumps(parameters, indent=1), encoding="utf-8")
     if asked.store and not asked.test:
