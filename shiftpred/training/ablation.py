@@ -47,11 +47,8 @@ class Variant:
     """Elements, hydrogens, charges and bond types alone as inputs."""
 
 
-def build_variants(passes: int) -> Iterator[Variant]:
-    """Yield the variants, the complete one first."""
-    from shiftpred.training.train_environment_model import NetworkSettings
-
-    full = NetworkSettings(passes=passes)
+def build_variants(full) -> Iterator[Variant]:
+    """Yield the variants of complete settings (NetworkSettings), those themselves first."""
     yield Variant("complete", full)
     yield Variant("without electronic constants", replace(full, electronic=False))
     yield Variant("without stereo", replace(full, stereo=False))
@@ -70,6 +67,7 @@ def compare_variants(
     passes: int = 12,
     processes: int = 2,
     report: Callable[[str], None] = print,
+    settings=None,
 ) -> dict:
     """Train and measure every variant.
 
@@ -83,6 +81,8 @@ def compare_variants(
         Part of the training compounds that is used, by a fixed random choice.
     passes, processes : int
     report : callable
+    settings : NetworkSettings, optional
+        The complete ones, `passes` aside; default: those of `shiftpred train`.
 
     Returns
     -------
@@ -90,7 +90,7 @@ def compare_variants(
         'share', 'passes', 'compounds', and 'rows': name, errors of the network alone and with the memory, ppm.
     """
     from shiftpred.training.network import export_arrays
-    from shiftpred.training.train_environment_model import build_graphs, train_environment_model
+    from shiftpred.training.train_environment_model import NetworkSettings, build_graphs, train_environment_model
 
     folder = Path(folder)
     folder.mkdir(parents=True, exist_ok=True)
@@ -102,7 +102,7 @@ def compare_variants(
     n = len(chosen)
     done = _read(folder, share, passes, n)
     first = None
-    for number, variant in enumerate(build_variants(passes)):
+    for number, variant in enumerate(build_variants(replace(settings or NetworkSettings(), passes=passes))):
         if any(row["name"] == variant.name for row in done["rows"]):
             continue
         report(variant.name)

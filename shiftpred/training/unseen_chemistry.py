@@ -12,6 +12,7 @@ from __future__ import annotations
 import argparse
 import json
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -72,8 +73,19 @@ def measure_unseen_chemistry(
     passes: int = 10,
     processes: int = 2,
     report: Callable[[str], None] = print,
+    settings=None,
 ) -> dict:
     """Train without the removed chemistry and measure on it.
+
+    Parameters
+    ----------
+    tables, folder : path
+    share : float
+        Part of the other compounds that is used.
+    passes, processes : int
+    report : callable
+    settings : NetworkSettings, optional
+        `passes` aside; default: those of `shiftpred train`.
 
     Returns
     -------
@@ -86,12 +98,15 @@ def measure_unseen_chemistry(
 
     folder = Path(folder)
     parts = split_tables(tables, folder, share)
-    settings = NetworkSettings(passes=passes)
+    settings = replace(settings or NetworkSettings(), passes=passes)
     train_model(
         parts["rest"], folder / "model", settings=settings, processes=processes, substituent_compounds=4000, report=report
     )
     rows = {"held out, nothing removed": evaluate_model(folder / "model", parts["rest"], "test", baselines=False)["by_novelty"]}
     for name in REMOVED:
+        if pd.read_csv(parts[name] / "compounds.csv").empty:
+            report(f"no {name} in these tables")
+            continue
         rows[name] = evaluate_model(folder / "model", parts[name], "all", baselines=False)["by_novelty"]
     result = dict(share=share, passes=passes, removed=REMOVED, rows=rows)
     (folder / FILE).write_text(json.dumps(result, indent=1) + "\n", encoding="utf-8")

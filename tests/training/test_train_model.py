@@ -119,3 +119,47 @@ def test_too_small_an_archive_is_refused(tmp_path):
     (tmp_path / "peaks.csv").write_text("compound,nucleus,shift_ppm,site\n1,13C,58.0,0\n")
     with pytest.raises(InputError, match="compounds to train on"):
         train_model(tmp_path, tmp_path / "mine", report=lambda _: None)
+
+
+def test_the_card_states_what_was_measured(archive, tmp_path):
+    from shiftpred.training.model_card import build_model_card
+    from shiftpred.training.train_model import train_model
+
+    train_model(archive, tmp_path / "mine", settings=settings(), processes=1, substituent_compounds=60, report=lambda _: None)
+    origin = load_bundle(tmp_path / "mine").manifest["origin"]
+    card = build_model_card(tmp_path / "mine", archive)
+    held = origin["held_out"]
+    assert f"{held['network_alone']['13C_mean']:.3f} ppm (13C)" in card and "edition" in card.splitlines()[0]
+    assert f"{origin['compounds']['train']:,} to train on" in card and list(origin["tables"].values())[0] in card
+    assert "ALL SITES" in card and str(tmp_path) not in card
+
+
+def test_ablation_measures_every_variant_once(archive, tmp_path):
+    from shiftpred.training.ablation import build_variants, compare_variants, render_ablation
+
+    said = []
+    small = settings(passes=2)
+    result = compare_variants(archive, tmp_path, share=1.0, passes=2, processes=1, report=said.append, settings=small)
+    names = [v.name for v in build_variants(small)]
+    assert [r["name"] for r in result["rows"]] == names and len(set(names)) == len(names) > 5
+    errors = {r["name"]: r["network"]["13C_mean"] for r in result["rows"]}
+    assert errors["without electronic constants"] != errors["complete"] != errors["elements and bond types alone"]
+    again = []
+    assert compare_variants(archive, tmp_path, 1.0, 2, 1, again.append, small) == result and not again
+    assert all(name in render_ablation(result) for name in names)
+
+
+def test_removed_chemistry_is_removed(archive, tmp_path):
+    import pandas as pd
+    from rdkit import Chem
+
+    from shiftpred.training.unseen_chemistry import REMOVED, split_tables
+
+    with open(tmp_path / "compounds.csv", "w") as c, open(tmp_path / "peaks.csv", "w") as p:
+        c.write("compound,smiles\n1,C[Si](C)(C)C\n2,c1ccc2[nH]ccc2c1\n3,CCO\n4,C1CC1CO\n5,c1ccncc1\n")
+        p.write("compound,nucleus,shift_ppm,site\n" + "".join(f"{k},13C,{20 + k},0\n" for k in range(1, 6)))
+    parts = split_tables(tmp_path, tmp_path / "parts", share=1.0)
+    found = {name: pd.read_csv(folder / "compounds.csv").compound.tolist() for name, folder in parts.items()}
+    assert found == {"rest": [3, 5], "silicon": [1], "selenium": [], "boron": [], "indoles": [2], "cyclopropanes": [4]}
+    assert pd.read_csv(parts["rest"] / "peaks.csv").compound.tolist() == [3, 5]
+    assert all(Chem.MolFromSmarts(s) is not None for s in REMOVED.values())
