@@ -9,8 +9,8 @@ from shiftpred.errors import ShiftpredError
 
 __all__ = ["render_versions"]
 
-_NEEDED = ("rdkit", "numpy", "scipy", "pandas", "click", "jinja2")
-_OPTIONAL = ("scikit-learn", "torch", "fastapi", "distributed")
+_NEEDED = ("rdkit", "numpy", "scipy", "pandas", "click", "jinja2", "tqdm")
+_OPTIONAL = ("openpyxl", "nmrglue", "scikit-learn", "torch", "fastapi", "distributed")
 
 
 def render_versions() -> str:
