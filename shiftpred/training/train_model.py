@@ -108,7 +108,11 @@ def train_model(
         some = np.random.default_rng(settings.random_seed).permutation(train)[:substituent_compounds]
         first_model, _ = fit_to_peak_lists([compounds[i] for i in some], log=report)
         first = [_predict_substituents(first_model, c.mol) for c in show_progress(compounds, "first assignment")]
+    fitting = time.time()
     trained = train_environment_model(compounds, settings, working, processes, report, starting, graphs, first)
+    log = (working / "rounds.jsonl").read_text(encoding="utf-8")
+    # A run that was stopped has spent time before, which its log knows.
+    elsewhere = sum(json.loads(line)["seconds"] for line in log.splitlines()) - (time.time() - fitting)
     arrays = _round_weights(export_arrays(trained))
     network = EnvironmentModel(arrays)
     report("memory of measured surroundings")
@@ -136,7 +140,7 @@ def train_model(
         settings=asdict(settings),
         started_from=base.edition if base else None,
         versions={p: version(p) for p in ("numpy", "rdkit", "scikit-learn", "torch")} | {"python": platform.python_version()},
-        minutes=round((time.time() - begun) / 60, 1),
+        minutes=round((time.time() - begun + elsewhere) / 60, 1),
         held_out=dict(before=before, network_alone=alone, after=after),
     )
     save_bundle(
@@ -151,7 +155,7 @@ def train_model(
         substituent_meta=substituent_meta,
         origin=origin,
         texts={
-            "rounds.jsonl": (working / "rounds.jsonl").read_text(encoding="utf-8"),
+            "rounds.jsonl": log,
             "set_aside.csv": render_set_aside(train_compounds, predicted, placed),
         },
     )
