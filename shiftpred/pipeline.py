@@ -11,7 +11,7 @@ from shiftpred.bundles import ModelBundle, load_bundle, load_default_bundle
 from shiftpred.peaks.solvents import normalise_solvent
 from shiftpred.predicting import predict_molecules, select_nucleus
 from shiftpred.records import Comparison, Explanation, MoleculePrediction, Ranking, RecordFailure, Structure
-from shiftpred.structures.reading import parse_structure, parse_structures
+from shiftpred.structures.reading import parse_listed_structures, parse_structure, parse_structures
 
 __all__ = [
     "compare",
@@ -175,13 +175,11 @@ def compare(structure, c13=None, h1=None, solvent: str | None = None, model=None
     >>> found.judgement
     'supported'
     """
-    from shiftpred.assignment import assign_structure
     from shiftpred.judgement import (
         build_comparison,
         build_ionised_structures,
         build_judgement_map,
         build_settings,
-        choose_solvent,
         read_sample,
     )
     from shiftpred.structures.rivals import build_rivals
@@ -190,13 +188,21 @@ def compare(structure, c13=None, h1=None, solvent: str | None = None, model=None
     proposal, peaks = parse_structure(structure), read_sample(c13, h1, asked)
     rivals = build_rivals(proposal, asked.rivals, asked.mass_confirmed)
     forms = build_ionised_structures(proposal)
-    read = [proposal, *(parse_structure(r.smiles) for r in rivals), *(form for form, _ in forms)]
-    beside = [parse_structure(smiles) for smiles in asked.expected]
-    predictions = predict_structures([*read, *beside], "both", choose_solvent(peaks, asked), asked.coverage, bundle)
-    expected = tuple(predictions[len(read) :])
-    fits = [assign_structure(p, peaks, expected) for p in predictions[: len(read)]]
+    read = [proposal, *parse_listed_structures(r.smiles for r in rivals), *(form for form, _ in forms)]
+    fits = _assign_structures(read, peaks, asked, bundle)
     main, ionised = fits[: 1 + len(rivals)], [(fit, how) for fit, (_, how) in zip(fits[1 + len(rivals) :], forms)]
     return build_comparison(proposal, asked, peaks, main, rivals, build_judgement_map(bundle.judgement), ionised)
+
+
+def _assign_structures(read: list[Structure], peaks, asked, bundle: ModelBundle) -> list:
+    """Predict structures and what is expected beside them, and assign the lists to each."""
+    from shiftpred.assignment import assign_structure
+    from shiftpred.judgement import choose_solvent
+
+    beside = parse_listed_structures(asked.expected)
+    predictions = predict_structures([*read, *beside], "both", choose_solvent(peaks, asked), asked.coverage, bundle)
+    expected = tuple(predictions[len(read) :])
+    return [assign_structure(p, peaks, expected) for p in predictions[: len(read)]]
 
 
 def rank_structures(structures, c13=None, h1=None, solvent: str | None = None, model=None, **settings) -> Ranking:
@@ -205,6 +211,7 @@ def rank_structures(structures, c13=None, h1=None, solvent: str | None = None, m
     Parameters
     ----------
     structures : iterable of str, path, rdkit Mol, Structure or RecordFailure, or a file of them
+        A text in an iterable is a structure, never the name of a file.
     c13, h1, solvent, model, **settings
         As for `compare`.
 
@@ -218,23 +225,12 @@ def rank_structures(structures, c13=None, h1=None, solvent: str | None = None, m
     InputError, SettingError
         As for `compare`; also if no candidate can be read.
     """
-    from shiftpred.assignment import assign_structure
-    from shiftpred.judgement import (
-        build_judgement_map,
-        build_ranking,
-        build_settings,
-        choose_solvent,
-        read_sample,
-        require_candidates,
-    )
+    from shiftpred.judgement import build_judgement_map, build_ranking, build_settings, read_sample, require_candidates
 
     bundle, asked = load_model(model), build_settings(solvent=solvent, **settings)
     peaks = read_sample(c13, h1, asked)
     positions, read, failures = require_candidates(parse_structures(structures))
-    beside = [parse_structure(smiles) for smiles in asked.expected]
-    predictions = predict_structures([*read, *beside], "both", choose_solvent(peaks, asked), asked.coverage, bundle)
-    expected = tuple(predictions[len(read) :])
-    fits = [assign_structure(p, peaks, expected) for p in predictions[: len(read)]]
+    fits = _assign_structures(read, peaks, asked, bundle)
     return build_ranking(asked, peaks, fits, positions, build_judgement_map(bundle.judgement), bundle.edition, failures)
 
 

@@ -52,8 +52,6 @@ class GuestSet:
     guests: tuple[Guest, ...]
     log_prior: float
     """Log chance that the compound is in the tube; 0 for what is always there."""
-    coherent: bool = True
-    """True: only if every line is found."""
     smiles: str = ""
     """Canonical SMILES without stereo; the compound itself is never its own impurity."""
 
@@ -76,7 +74,7 @@ def build_expected_guests(prediction, nucleus: str, name: str) -> GuestSet:
         if key not in seen:
             seen.add(key)
             guests.append(Guest(name, row.shift_ppm, row.scale_ppm, row.degrees_of_freedom, 0.7 if row.labile else 0.3))
-    return GuestSet(name, tuple(guests), float(np.log(0.5)), coherent=False)
+    return GuestSet(name, tuple(guests), float(np.log(0.5)))
 
 
 def build_solvent_guests(solvent: str | None, nucleus: str) -> tuple[GuestSet, ...]:
@@ -107,7 +105,7 @@ def build_solvent_guests(solvent: str | None, nucleus: str) -> tuple[GuestSet, .
         if water is not None and all(abs(water.shift_ppm - g.shift) > 0.05 for g in guests):
             guests.append(Guest("water", water.shift_ppm, parameters.water_scale_ppm, 4.0, 0.75))
         if guests:
-            sets.append(GuestSet(label, tuple(guests), 0.0, coherent=False))
+            sets.append(GuestSet(label, tuple(guests), 0.0))
     return tuple(sets)
 
 

@@ -29,13 +29,11 @@ class PeakModelParameters:
     """The same for water, which moves with concentration and temperature (common practice, no source)."""
     warn_offset_ppm: float
     """Offset from which a warning is given (the design's choice)."""
-    pair_tolerance_ppm: float
-    """How far the coordinate of a C-H pair may lie from the line in the other list (common practice, no source)."""
     smallest_scale_ppm: float
     """Floor for the scale of the error distribution: digits printed, temperature, concentration (common practice)."""
 
 
 PARAMETERS = {
-    "13C": PeakModelParameters(0.15, 0.10, 0.30, 0.12, 0.15, 0.15, 0.30, 0.5, 0.15),
-    "1H": PeakModelParameters(0.04, 0.15, 0.03, 0.012, 0.02, 0.12, 0.05, 0.04, 0.02),
+    "13C": PeakModelParameters(0.15, 0.10, 0.30, 0.12, 0.15, 0.15, 0.30, 0.15),
+    "1H": PeakModelParameters(0.04, 0.15, 0.03, 0.012, 0.02, 0.12, 0.05, 0.02),
 }

@@ -9,8 +9,8 @@ from collections.abc import Callable
 
 import click
 
-from shiftpred.cli.exit_codes import BAD_INPUT, FINE, INTERRUPTED, OUR_FAULT
 from shiftpred.errors import ShiftpredError
+from shiftpred.exit_codes import BAD_INPUT, FINE, INTERRUPTED, OUR_FAULT
 
 __all__ = ["ReaderGone", "print_message", "run_guarded"]
 

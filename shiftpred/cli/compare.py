@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import click
 
-from shiftpred.cli.exit_codes import FINE, JUDGEMENT_REACHED
 from shiftpred.cli.options import (
     ManyWords,
     build_settings,
@@ -14,9 +13,9 @@ from shiftpred.cli.options import (
     report_options,
     traceback_option,
 )
+from shiftpred.exit_codes import FINE, JUDGEMENT_REACHED, is_judgement_reached
 
 FORMATS = ("text", "json", "html")
-_WORSE = {"supported": 0, "open": 1, "contradicted": 2}
 
 
 @click.command("compare", cls=ManyWords, short_help="Judge whether peaks bear a structure out; assign them; write a report.")
@@ -46,12 +45,7 @@ def command(structure, c13, h1, fail_on, format_, output, sample, reviewer, date
     write_result(output, _render(document, chosen))
     if output not in (None, "-"):
         print_message(f"{render_verdict_line(document)}; written to {output}")
-    return choose_exit_code(comparison.judgement, fail_on)
-
-
-def choose_exit_code(judgement: str, fail_on: str | None) -> int:
-    """Return 4 where the judgement is the one of `--fail-on` or worse, else 0."""
-    return JUDGEMENT_REACHED if fail_on and _WORSE[judgement] >= _WORSE[fail_on] else FINE
+    return JUDGEMENT_REACHED if is_judgement_reached(comparison.judgement, fail_on) else FINE
 
 
 def _render(document: dict, chosen: str) -> str:

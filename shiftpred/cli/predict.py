@@ -6,7 +6,6 @@ from collections.abc import Iterable, Iterator
 
 import click
 
-from shiftpred.cli.exit_codes import FINE, OUR_FAULT, SOME_RECORDS_FAILED
 from shiftpred.cli.options import (
     coverage_option,
     is_traceback_wanted,
@@ -15,6 +14,7 @@ from shiftpred.cli.options import (
     solvent_option,
     traceback_option,
 )
+from shiftpred.exit_codes import FINE, OUR_FAULT, SOME_RECORDS_FAILED
 
 FORMATS = ("table", "csv", "json", "html")
 

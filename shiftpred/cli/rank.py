@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import click
 
-from shiftpred.cli.exit_codes import FINE, SOME_RECORDS_FAILED
 from shiftpred.cli.options import (
     ManyWords,
     build_settings,
@@ -13,6 +12,7 @@ from shiftpred.cli.options import (
     report_options,
     traceback_option,
 )
+from shiftpred.exit_codes import FINE, SOME_RECORDS_FAILED
 
 FORMATS = ("text", "json", "html")
 

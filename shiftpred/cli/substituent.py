@@ -6,9 +6,9 @@ from collections.abc import Iterable
 
 import click
 
-from shiftpred.cli.exit_codes import FINE, SOME_RECORDS_FAILED
 from shiftpred.cli.options import output_options, traceback_option
 from shiftpred.errors import InputError, NotApplicable
+from shiftpred.exit_codes import FINE, SOME_RECORDS_FAILED
 
 FORMATS = ("text", "json")
 

@@ -1,6 +1,6 @@
 """Electronegativities of elements, hybrids and groups; inductive and resonance constants, each with its source."""
 
-from importlib import import_module
+from shiftpred.lazy_names import build_lazy_names
 
 _HOME = {
     "SourcedConstant": "shiftpred.electronics.constants",
@@ -25,16 +25,4 @@ _HOME = {
     "group_vector": "shiftpred.electronics.vector",
 }
 
-__all__ = sorted(_HOME)
-
-
-def __getattr__(name: str):
-    if name not in _HOME:
-        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
-    value = getattr(import_module(_HOME[name]), name)
-    globals()[name] = value
-    return value
-
-
-def __dir__():
-    return __all__
+__all__, __getattr__, __dir__ = build_lazy_names(globals(), _HOME)

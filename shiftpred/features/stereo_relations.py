@@ -56,10 +56,9 @@ def compute_stereo_edges(mol: Chem.Mol, any_centre: bool, rings) -> tuple[list[i
                 _add_double_bond(bond, stereo in _CIS, begin, end, kind)
     like = {}
     if any_centre:
-        faces = {}
         for ring in rings:
             if len(ring) <= _LARGEST_RING:
-                _add_ring(mol, ring, begin, end, kind, faces)
+                _add_ring(mol, ring, begin, end, kind)
         like = _compare_neighbouring_centres(mol)
     return begin, end, kind, like
 
@@ -82,7 +81,7 @@ def _add_double_bond(bond, reference_cis, begin, end, kind):
             kind.append(0 if cis else 1)
 
 
-def _add_ring(mol, ring, begin, end, kind, faces):
+def _add_ring(mol, ring, begin, end, kind):
     """Add the cis/trans relations between the substituents of one ring."""
     size = len(ring)
     substituents = []

@@ -18,7 +18,7 @@ from shiftpred.peaks.plausibility import require_plausible
 from shiftpred.peaks.problems import PeakListError
 from shiftpred.records import NUCLEI, Peak, PeakList
 
-__all__ = ["LARGEST_TEXT", "MOST_PEAKS", "PeakListError", "parse_peaks"]
+__all__ = ["LARGEST_TEXT", "MOST_PEAKS", "PeakListError", "parse_peak_text", "parse_peaks"]
 
 LARGEST_TEXT = 200_000
 """Characters; longer texts are refused."""
@@ -99,6 +99,30 @@ def _parse_text_or_file(source, nucleus: str, where: str) -> tuple[PeakList, str
     path = _find_file(text, isinstance(source, os.PathLike), where)
     if path is not None:
         text, where = _read_file(path, where), f"{where}, {path}"
+    return _parse_text(text, nucleus, where), where
+
+
+def parse_peak_text(text: str, nucleus: str, *, where: str | None = None) -> PeakList:
+    """Read one nucleus' peaks from a text that is never the name of a file.
+
+    Parameters
+    ----------
+    text : str
+        Journal text, plain numbers or a table, as for `parse_peaks`.
+    nucleus : {'13C', '1H'}
+    where : str, optional
+        Name of the field, for messages; default '13C peaks' or '1H peaks'.
+
+    Raises
+    ------
+    PeakListError
+        With everything that was not understood in `problems`.
+    """
+    where = where or f"{nucleus} peaks"
+    return parse_peaks(_parse_text(text, nucleus, where), nucleus, where=where)
+
+
+def _parse_text(text: str, nucleus: str, where: str) -> PeakList:
     if len(text) > LARGEST_TEXT:
         raise PeakListError(where, f"{len(text):,} characters", f"at most {LARGEST_TEXT:,}", "give the peaks of one spectrum")
     if not text.strip():
@@ -113,7 +137,7 @@ def _parse_text_or_file(source, nucleus: str, where: str) -> tuple[PeakList, str
             "at least one peak",
             "give the shifts in ppm, separated by commas",
         )
-    return found, where
+    return found
 
 
 def _build_error(problems, where: str) -> PeakListError:

@@ -3,7 +3,7 @@
 Nothing is imported before it is asked for: `predict --format csv` loads neither templates nor pictures.
 """
 
-from importlib import import_module
+from shiftpred.lazy_names import build_lazy_names
 
 _HOME = {
     "PREDICTION_COLUMNS": "shiftpred.reporting.prediction_rows",
@@ -41,16 +41,4 @@ _HOME = {
     "save_text": "shiftpred.reporting.saving",
 }
 
-__all__ = sorted(_HOME)
-
-
-def __getattr__(name: str):
-    if name not in _HOME:
-        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
-    value = getattr(import_module(_HOME[name]), name)
-    globals()[name] = value
-    return value
-
-
-def __dir__():
-    return __all__
+__all__, __getattr__, __dir__ = build_lazy_names(globals(), _HOME)

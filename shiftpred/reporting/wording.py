@@ -15,7 +15,6 @@ REASON_CODE_SENTENCE = {
     "mixture_or_salt": "More than one compound seems to be in the tube, or a salt.",
     "outside_training_data": "The structure lies outside what the model was trained on.",
 }
-POSITION_SIGN = {"alpha": "α", "beta": "β", "gamma": "γ"}
 
 
 def format_shift(ppm: float | None, nucleus: str) -> str:

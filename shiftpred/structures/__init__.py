@@ -3,7 +3,7 @@
 from shiftpred.structures.building import LARGEST_STRUCTURE
 from shiftpred.structures.environments import coarser_environment, compute_environments, compute_site_environments
 from shiftpred.structures.equivalence import Equivalence, compute_equivalence
-from shiftpred.structures.reading import parse_structure, parse_structures
+from shiftpred.structures.reading import parse_listed_structures, parse_structure, parse_structures
 from shiftpred.structures.sites import compute_sites
 from shiftpred.structures.standardise import standardise_mol
 
@@ -15,6 +15,7 @@ __all__ = [
     "compute_equivalence",
     "compute_site_environments",
     "compute_sites",
+    "parse_listed_structures",
     "parse_structure",
     "parse_structures",
     "standardise_mol",

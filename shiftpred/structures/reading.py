@@ -20,7 +20,7 @@ from shiftpred.structures.building import LARGEST_STRUCTURE, build_structure
 from shiftpred.structures.molfile_blocks import is_counts_line, parse_blocks
 from shiftpred.structures.smiles_text import attempt, parse_line
 
-__all__ = ["LARGEST_STRUCTURE", "parse_structure", "parse_structures"]
+__all__ = ["LARGEST_STRUCTURE", "parse_listed_structures", "parse_structure", "parse_structures"]
 
 _LINE_SUFFIXES = (".smi", ".smiles", ".ism", ".can", ".txt", ".inchi")
 _TABLE_SUFFIXES = (".csv", ".tsv")
@@ -87,7 +87,8 @@ def parse_structures(source, name: str | None = None) -> Iterator[Structure | Re
     source : str, path, rdkit Mol, Structure, RecordFailure or iterable of these
         A SMILES ('CCO' or 'CCO ethanol'), an InChI, the path of a .smi, .csv, .tsv, .mol or .sdf file (V2000 or V3000, also
         gzipped), the text of a molfile, or '-' for SMILES lines, a table or an SDF on standard input. A file that exists is
-        read as a file, whatever else its name could mean.
+        read as a file, whatever else its name could mean. Inside an iterable a text is the structure itself and never the
+        name of a file; a file there is given as a `pathlib.Path`.
     name : str, optional
         Name of a single record, instead of the one that it carries.
 
@@ -115,12 +116,39 @@ def parse_structures(source, name: str | None = None) -> Iterator[Structure | Re
     for number, one in enumerate(source, 1):
         where = f"structure {number}"
         try:
-            if isinstance(one, (str, os.PathLike, Structure, Chem.Mol, RecordFailure)):
+            if isinstance(one, str):
+                yield from _parse_item_text(one, where, str(number))
+            elif isinstance(one, (os.PathLike, Structure, Chem.Mol, RecordFailure)):
                 yield from _parse_one(one, None, where, str(number))
             else:
-                raise StructureError(where, _describe(one), "a SMILES, a path or an rdkit Mol", "pass 'CCO'")
+                raise StructureError(where, _describe(one), "a SMILES, a pathlib.Path or an rdkit Mol", "pass 'CCO'")
         except InputError as error:
             yield RecordFailure(str(number), error)
+
+
+def parse_listed_structures(sources: Iterable) -> list[Structure]:
+    """Read structures of which each one is needed; texts are structures, never the names of files.
+
+    Parameters
+    ----------
+    sources : iterable of str, path, rdkit Mol or Structure
+
+    Raises
+    ------
+    InputError
+        The first that cannot be read.
+
+    Examples
+    --------
+    >>> [s.smiles for s in parse_listed_structures(["OCC", "C"])]
+    ['CCO', 'C']
+    """
+    found = []
+    for record in parse_structures(list(sources)):
+        if isinstance(record, RecordFailure):
+            raise record.error
+        found.append(record)
+    return found
 
 
 def _describe(value) -> str:
@@ -183,6 +211,22 @@ def _parse_text(text: str, where: str, number: str) -> Iterator[Structure | Reco
         if isinstance(record, RecordFailure) and os.path.isdir(stripped):
             raise InputError(quote(stripped), "a folder", "a SMILES, or the path of a file", "name one file in it")
         yield record
+
+
+def _parse_item_text(text: str, where: str, number: str) -> Iterator[Structure | RecordFailure]:
+    """Read a text that stands in a list: a line or the text of a molfile, never opened."""
+    stripped = text.strip().lstrip("\ufeff")
+    if "\n" in stripped:
+        yield from _parse_lines_of_any_kind(io.StringIO(text.lstrip("\ufeff"), newline=None), f"{where} text")
+    elif stripped == "-" or _looks_like_path(stripped):
+        raise StructureError(
+            where,
+            f"{quote(stripped)}, the name of a file",
+            "a SMILES; a text in a list is never opened as a file",
+            "give the file alone, or as pathlib.Path(...)",
+        )
+    else:
+        yield parse_line(stripped, number, where)
 
 
 def _is_file(text: str) -> bool:

@@ -16,14 +16,13 @@ from pathlib import Path
 from tqdm import tqdm
 
 from shiftpred.errors import SettingError
+from shiftpred.exit_codes import FINE, JUDGEMENT_REACHED, OUR_FAULT, SOME_RECORDS_FAILED, is_judgement_reached
 from shiftpred.triage.engines import iterate_results
 from shiftpred.triage.judging import ROW_COLUMNS, compute_fingerprint, judge_sample
 from shiftpred.triage.page import render_triage_page
 from shiftpred.triage.samples import parse_samples
 
 __all__ = ["run_triage"]
-
-_WORSE = {"supported": 0, "open": 1, "contradicted": 2}
 
 
 def run_triage(
@@ -92,11 +91,11 @@ def run_triage(
     said = ", ".join(f"{counts[k]} {k}" for k in ("supported", "open", "contradicted", "not judged") if counts[k])
     again = f" ({kept} from an earlier run)" if kept else ""
     print(f"{len(ordered)} samples: {said}{again}; {folder / 'index.html'}, {folder / 'summary.csv'}", file=sys.stderr)
-    if fail_on and any(row["judgement"] and _WORSE[row["judgement"]] >= _WORSE[fail_on] for row in ordered):
-        return 4
+    if any(is_judgement_reached(row["judgement"], fail_on) for row in ordered):
+        return JUDGEMENT_REACHED
     if any(row.get("fault") for row in ordered):
-        return 1
-    return 3 if counts["not judged"] else 0
+        return OUR_FAULT
+    return SOME_RECORDS_FAILED if counts["not judged"] else FINE
 
 
 def _read_result(folder: Path, number: int, fingerprint: str) -> dict | None:

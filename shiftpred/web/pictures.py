@@ -4,19 +4,14 @@ from __future__ import annotations
 
 import re
 
-from rdkit import Chem
-from rdkit.Chem import rdDepictor
 from rdkit.Chem.Draw import rdMolDraw2D
-from rdkit.Geometry import Point3D
 
 from shiftpred.reporting import render_structure_svg
 from shiftpred.reporting.pictures.lane import build_lane_entries
+from shiftpred.reporting.pictures.structure import build_drawable_mol
 from shiftpred.reporting.pictures.svg_elements import STYLE, render_element, render_picture
 
 __all__ = ["link_lane", "render_linked_structure"]
-
-_LARGEST = 300
-"""Heavy atoms; beyond that a drawing tells nothing."""
 
 
 def render_linked_structure(structure: dict, labels: dict[int, str] | None = None, marks: dict[int, str] | None = None) -> str:
@@ -35,14 +30,9 @@ def render_linked_structure(structure: dict, labels: dict[int, str] | None = Non
     str
         One `svg` element; the discs carry `class="site"` and `data-atom`.
     """
-    mol = Chem.MolFromSmiles(structure["smiles"])
-    if mol is None or not 0 < mol.GetNumAtoms() <= _LARGEST:
+    mol = build_drawable_mol(structure)
+    if mol is None:
         return render_structure_svg(structure)
-    _place_atoms(mol, structure.get("coordinates"))
-    try:
-        mol = rdMolDraw2D.PrepareMolForDrawing(mol, kekulize=True, addChiralHs=False)
-    except ValueError:
-        mol = rdMolDraw2D.PrepareMolForDrawing(mol, kekulize=False, addChiralHs=False)
     numbers = structure["smiles_atoms"]
     for atom, number in zip(mol.GetAtoms(), numbers, strict=True):
         text = str(number) if labels is None else labels.get(number, "")
@@ -116,16 +106,3 @@ def link_lane(svg: str, document: dict, nucleus: str) -> str:
         found = next((v for (shift, _, one), v in atoms.items() if shift == round(bar.shift, 4) and one == first), [first])
         linked.append(f'class="bar" data-atoms="{" ".join(map(str, found))}" {piece}')
     return "<rect ".join(linked)
-
-
-def _place_atoms(mol: Chem.Mol, coordinates) -> None:
-    if not coordinates:
-        rdDepictor.Compute2DCoords(mol, canonOrient=True)
-        rdDepictor.StraightenDepiction(mol)
-        return
-    conformer = Chem.Conformer(mol.GetNumAtoms())
-    conformer.Set3D(False)
-    for i, (x, y) in enumerate(coordinates):
-        conformer.SetAtomPosition(i, Point3D(x, y, 0.0))
-    mol.AddConformer(conformer, assignId=True)
-    rdDepictor.NormalizeDepiction(mol, canonicalize=0)

@@ -2,11 +2,8 @@
 
 from __future__ import annotations
 
-from shiftpred.errors import StructureError, quote
-from shiftpred.peaks.column_table import is_column_table, parse_column_table
-from shiftpred.peaks.journal_text import parse_journal_text
-from shiftpred.peaks.problems import PeakListError
-from shiftpred.peaks.reading import LARGEST_TEXT, parse_peaks
+from shiftpred.errors import StructureError
+from shiftpred.peaks import reading as peaks
 from shiftpred.records import PeakList, RecordFailure, Structure
 from shiftpred.structures.molfile_blocks import parse_blocks
 from shiftpred.structures.smiles_text import parse_line
@@ -75,27 +72,4 @@ def parse_peak_text(text: str, nucleus: str) -> PeakList | None:
     PeakListError
         With everything that was not understood in `problems`.
     """
-    where = f"{nucleus} peaks"
-    if not text.strip():
-        return None
-    if len(text) > LARGEST_TEXT:
-        raise PeakListError(where, f"{len(text):,} characters", f"at most {LARGEST_TEXT:,}", "give the peaks of one spectrum")
-    found, problems = (parse_column_table if is_column_table(text) else parse_journal_text)(text, nucleus)
-    if problems:
-        place, snippet, reason = problems[0]
-        more = f" (and {len(problems) - 1} more)" if len(problems) > 1 else ""
-        raise PeakListError(
-            f"{where}, {place}",
-            f"{quote(snippet)}: {reason}{more}",
-            "peaks such as '166.6, 132.8' or '7.42 (m, 2H)'",
-            "correct that place; separate peaks by commas",
-            problems,
-        )
-    if not found.peaks:
-        raise PeakListError(
-            where,
-            f"{quote(text.strip())}, in which there is no peak",
-            "at least one peak",
-            "give the shifts in ppm, separated by commas",
-        )
-    return parse_peaks(found, nucleus, where=where)
+    return peaks.parse_peak_text(text, nucleus) if text.strip() else None

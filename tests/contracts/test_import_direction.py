@@ -9,6 +9,7 @@ import pytest
 
 PACKAGE = Path(__file__).resolve().parents[2] / "shiftpred"
 ORDER = [
+    "lazy_names",
     "structures",
     "substituents",
     "electronics",
@@ -22,6 +23,7 @@ ORDER = [
     "judgement",
     "pipeline",
     "reporting",
+    "exit_codes",
     "triage",
     "web",
     "training",

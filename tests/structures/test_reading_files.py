@@ -4,6 +4,7 @@ import gzip
 import io
 import re
 import tracemalloc
+from pathlib import Path
 
 import pandas as pd
 import pytest
@@ -14,7 +15,7 @@ from rdkit.Chem import AllChem
 
 from shiftpred.errors import InputError, ShiftpredError, StructureError
 from shiftpred.records import RecordFailure, Structure
-from shiftpred.structures import parse_structure, parse_structures
+from shiftpred.structures import parse_listed_structures, parse_structure, parse_structures
 
 PATTERN = re.compile(r".+: got .+; expected .+\. Try: .+", re.DOTALL)
 
@@ -222,8 +223,19 @@ def test_list_of_files_molecules_and_texts(tmp_path):
     records = list(
         parse_structures([path, str(path), "CCN", Chem.MolFromSmiles("CCF"), tmp_path / "none.smi", None, float("nan")])
     )
-    assert [r.name for r in records] == ["a", "b", "a", "b", "3", "4", "5", "6", "7"]
-    assert [isinstance(r, RecordFailure) for r in records] == [False] * 6 + [True] * 3
+    assert [r.name for r in records] == ["a", "b", "2", "3", "4", "5", "6", "7"]
+    assert [isinstance(r, RecordFailure) for r in records] == [False, False, True, False, False, True, True, True]
+    assert "never opened" in str(records[2].error)
+
+
+def test_a_text_in_a_list_is_never_opened(tmp_path, monkeypatch):
+    write(tmp_path, "CCO", "CCCCCC hexane\n")
+    monkeypatch.chdir(tmp_path)
+    assert [r.smiles for r in parse_structures(["CCO", Path("CCO")])] == ["CCO", "CCCCCC"]
+    assert [s.smiles for s in parse_listed_structures(["CCO"])] == ["CCO"]
+    assert parse_structure("CCO").smiles == "CCCCCC"
+    with pytest.raises(StructureError, match="structure 2: got"):
+        parse_listed_structures(["CCO", "-"])
 
 
 @pytest.mark.parametrize("source", [None, 5, b"CCO"])

@@ -13,7 +13,7 @@ from rdkit.Geometry import Point3D
 
 from shiftpred.reporting.pictures.svg_elements import STYLE, render_element, render_label, render_picture
 
-__all__ = ["render_structure_svg"]
+__all__ = ["build_drawable_mol", "render_structure_svg"]
 
 _NUMBER_COLOUR = (0.0, 114 / 255, 178 / 255)
 _NUMBER_HEX = "#0072B2"
@@ -49,7 +49,7 @@ def render_structure_svg(
     -----
     The same structure gives the same picture with the same RDKit release.
     """
-    mol = _build_drawable(structure)
+    mol = build_drawable_mol(structure)
     name = structure.get("name") or structure["smiles"]
     if mol is None:
         return _render_text_instead(structure["smiles"], name)
@@ -85,7 +85,14 @@ def render_structure_svg(
     return render_picture(width, height, title, body, class_="structure")
 
 
-def _build_drawable(structure: dict) -> Chem.Mol | None:
+def build_drawable_mol(structure: dict) -> Chem.Mol | None:
+    """Return a molecule with coordinates, its atoms in the order of `smiles_atoms`; None if it cannot be drawn.
+
+    Parameters
+    ----------
+    structure : dict
+        As for `render_structure_svg`.
+    """
     mol = Chem.MolFromSmiles(structure["smiles"])
     if mol is None or not 0 < mol.GetNumAtoms() <= _LARGEST or len(structure["smiles_atoms"]) != mol.GetNumAtoms():
         return None
