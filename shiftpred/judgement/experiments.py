@@ -19,7 +19,7 @@ _CLEAR_CARBON_PPM = 4.0
 
 
 def propose_experiment(proposal: MoleculePrediction, rival: MoleculePrediction) -> str:
-    """Name an experiment that tells the proposal from a rival; '' if they have the same constitution and geometry.
+    """Name an experiment that tells the proposal from a rival; '' if they are the same.
 
     Parameters
     ----------
@@ -32,6 +32,8 @@ def propose_experiment(proposal: MoleculePrediction, rival: MoleculePrediction) 
         Tried in this order: mass, hydrogen counts (DEPT or HSQC), E/Z couplings, NOE from a methyl or methylene on an aromatic
         ring, HMBC, NOE for relative configuration.
     """
+    if proposal.structure.smiles == rival.structure.smiles:
+        return ""
     for propose in (_by_mass, _by_hydrogen_counts, _by_double_bond, _by_overhauser, _by_long_range, _by_configuration):
         text = propose(proposal, rival)
         if text:
