@@ -125,7 +125,7 @@ def _compare(sample: Sample, settings: dict, folder: Path, date: str) -> dict:
         smiles=structure.smiles,
         report=report,
         note="; ".join(structure.notes),
-        thumbnail=render_structure_svg(document["structure"]),
+        thumbnail=render_structure_svg(document["structure"], numbers=False),
     )
 
 

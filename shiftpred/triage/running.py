@@ -6,11 +6,10 @@ import csv
 import datetime
 import io
 import json
-import os
 import sys
 from collections import Counter
 from collections.abc import Iterator
-from contextlib import contextmanager
+from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
 from tqdm import tqdm
@@ -18,6 +17,7 @@ from tqdm import tqdm
 from shiftpred.errors import SettingError
 from shiftpred.exit_codes import FINE, JUDGEMENT_REACHED, OUR_FAULT, SOME_RECORDS_FAILED, is_judgement_reached
 from shiftpred.triage.engines import iterate_results
+from shiftpred.triage.folder_lock import hold_folder
 from shiftpred.triage.judging import ROW_COLUMNS, compute_fingerprint, judge_sample
 from shiftpred.triage.page import render_triage_page
 from shiftpred.triage.samples import parse_samples
@@ -129,39 +129,21 @@ def _save_outcome(folder: Path, rows: list[dict], edition: str, settings: dict, 
 
 @contextmanager
 def _lock(folder: Path) -> Iterator[None]:
-    """Make the folder and hold it for this run; a second run into it is refused, a lock of a dead run is taken over."""
-    try:
-        for name in ("", "results", "reports"):
-            (folder / name).mkdir(parents=True, exist_ok=True)
-        lock = folder / ".running"
-        if lock.exists() and not _is_alive(lock):
-            lock.unlink(missing_ok=True)
-        handle = os.open(lock, os.O_CREAT | os.O_EXCL | os.O_WRONLY)
-    except FileExistsError:
-        raise SettingError(
-            "--output",
-            f"{str(folder)!r}, which another run is writing to",
-            "a folder of its own for each run",
-            f"wait for that run, or remove {folder / '.running'} if there is none",
-        ) from None
-    except OSError as error:
-        raise SettingError(
-            "--output", f"{str(folder)!r} ({error.strerror})", "a folder that can be written to", "choose another"
-        ) from None
-    try:
-        os.write(handle, str(os.getpid()).encode())
-        os.close(handle)
+    """Make the folder and hold it for this run; a second run into it is refused."""
+    with ExitStack() as held:
+        try:
+            for name in ("", "results", "reports"):
+                (folder / name).mkdir(parents=True, exist_ok=True)
+            held.enter_context(hold_folder(folder))
+        except BlockingIOError:
+            raise SettingError(
+                "--output",
+                f"{str(folder)!r}, which another run is writing to",
+                "a folder of its own for each run",
+                "wait for that run, or choose another folder",
+            ) from None
+        except OSError as error:
+            raise SettingError(
+                "--output", f"{str(folder)!r} ({error.strerror})", "a folder that can be written to", "choose another"
+            ) from None
         yield
-    finally:
-        lock.unlink(missing_ok=True)
-
-
-def _is_alive(lock: Path) -> bool:
-    try:
-        pid = int(lock.read_text() or 0)
-        if pid == os.getpid():
-            return False
-        os.kill(pid, 0)
-    except (ValueError, ProcessLookupError, OSError):
-        return False
-    return True

@@ -5,6 +5,8 @@ from __future__ import annotations
 import csv
 import gzip
 import io
+import zipfile
+import zlib
 from collections.abc import Iterator
 from dataclasses import asdict, dataclass
 from pathlib import Path
@@ -25,6 +27,9 @@ _COLUMNS = {
 _STRUCTURE_SUFFIXES = (".smi", ".smiles", ".mol", ".sdf")
 _PEAK_ENDINGS = {"c13": ("_13c", "-13c", ".13c", "_c13"), "h1": ("_1h", "-1h", ".1h", "_h1")}
 _PEAK_SUFFIXES = (".txt", ".csv", ".tsv")
+_LARGEST_TABLE = 256 * 1024 * 1024
+_MOST_ROWS, _MOST_COLUMNS = 200_000, 256
+"""Of a workbook; formatting alone can make a sheet a million rows long."""
 
 
 @dataclass(frozen=True)
@@ -77,17 +82,51 @@ def parse_samples(source: str | Path) -> Iterator[Sample]:
 
 def _read_table(path: Path) -> Iterator[list[str]]:
     try:
-        content = gzip.decompress(path.read_bytes()) if path.suffix == ".gz" else path.read_bytes()
-    except OSError as error:
+        _require_size(path)
+        content = path.read_bytes()
+        if content[:2] == b"\x1f\x8b":
+            content = gzip.GzipFile(fileobj=io.BytesIO(content)).read(_LARGEST_TABLE + 1)
+    except (OSError, EOFError, zlib.error) as error:
+        if isinstance(error, InputError):
+            raise
         raise InputError(str(path), f"a file that cannot be read ({error})", "a readable table", "check permissions") from None
-    try:
-        text = content.decode("utf-8-sig")
-    except UnicodeDecodeError:
-        text = content.decode("latin-1")
-    first = text.split("\n", 1)[0]
+    if len(content) > _LARGEST_TABLE:
+        raise _build_size_error(path, f"more than {_LARGEST_TABLE:,} bytes once unpacked")
+    if content[:2] == b"PK":
+        raise InputError(str(path), "a zip archive or workbook", "a CSV or TSV", "name a workbook .xlsx, or save it as CSV")
+    text = _decode(content)
+    first = text.lstrip().split("\n", 1)[0]
     delimiter = max(",;\t", key=first.count)
     csv.field_size_limit(1_000_000)
-    yield from csv.reader(io.StringIO(text), delimiter=delimiter)
+    rows = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
+    try:
+        yield from rows
+    except csv.Error as error:
+        raise InputError(
+            f"{path}, line {rows.line_num}",
+            f"a row that cannot be read ({error})",
+            "a CSV with quotation marks in pairs",
+            "check the quotation marks from here on",
+        ) from None
+
+
+def _require_size(path: Path) -> None:
+    size = path.stat().st_size
+    if size > _LARGEST_TABLE:
+        raise _build_size_error(path, f"{size:,} bytes")
+
+
+def _build_size_error(path: Path, came: str) -> InputError:
+    return InputError(str(path), came, f"at most {_LARGEST_TABLE:,} bytes", "split the table")
+
+
+def _decode(content: bytes) -> str:
+    if content[:2] in (b"\xff\xfe", b"\xfe\xff"):
+        return content.decode("utf-16", errors="replace")
+    try:
+        return content.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        return content.decode("latin-1")
 
 
 def _read_workbook(path: Path) -> Iterator[list[str]]:
@@ -101,13 +140,27 @@ def _read_workbook(path: Path) -> Iterator[list[str]]:
             "pip install 'shiftpred[tables]'",
         ) from None
     try:
+        with zipfile.ZipFile(path) as archive:  # says how large it is before anything is unpacked
+            unpacked = sum(member.file_size for member in archive.infolist())
+        if unpacked > _LARGEST_TABLE:
+            raise _build_size_error(path, f"{unpacked:,} bytes once unpacked")
         book = load_workbook(path, read_only=True, data_only=True)
-    except Exception as error:
+        try:
+            # One more than allowed, so that there is something to refuse.
+            for number, row in enumerate(book.active.iter_rows(values_only=True, max_col=_MOST_COLUMNS), 1):
+                if number > _MOST_ROWS:
+                    raise InputError(
+                        str(path), f"more than {_MOST_ROWS:,} rows", "a sheet of samples", "delete empty rows below"
+                    )
+                yield ["" if cell is None else str(cell) for cell in row]
+        finally:
+            book.close()
+    except (InputError, GeneratorExit):
+        raise
+    except Exception as error:  # the library raises whatever the damaged part brings up
         raise InputError(
             str(path), f"a workbook that cannot be read ({error})", "an .xlsx file", "save it again, or as CSV"
         ) from None
-    for row in book.active.iter_rows(values_only=True):
-        yield ["" if cell is None else str(cell) for cell in row]
 
 
 def _parse_rows(rows: Iterator[list[str]], where: str) -> Iterator[Sample]:

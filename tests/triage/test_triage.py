@@ -92,17 +92,25 @@ def test_half_written_result_is_done_again(tmp_path):
 def test_one_folder_for_one_run(tmp_path):
     folder = tmp_path / "out"
     folder.mkdir()
-    (folder / ".running").write_text(str(os.getppid()))
-    with pytest.raises(SettingError, match="another run is writing to"):
-        run_triage(QUEUE, folder, **SETTINGS)
+    code = (
+        "import pathlib; from shiftpred.triage.folder_lock import hold_folder\n"
+        f"with hold_folder(pathlib.Path({str(folder)!r})): print('held', flush=True); input()"
+    )
+    other = subprocess.Popen([sys.executable, "-c", code], stdin=subprocess.PIPE, stdout=subprocess.PIPE)
+    try:
+        assert other.stdout.readline().strip() == b"held"
+        with pytest.raises(SettingError, match="another run is writing to"):
+            run_triage(QUEUE, folder, **SETTINGS)
+        assert not (folder / "summary.csv").exists()
+    finally:
+        other.communicate(b"\n")
+    assert other.returncode == 0 and not (folder / ".running").exists()
 
 
 def test_lock_of_a_dead_run_is_taken_over(tmp_path):
     folder = tmp_path / "out"
     folder.mkdir()
-    dead = subprocess.Popen([sys.executable, "-c", "pass"])
-    dead.wait()
-    (folder / ".running").write_text(str(dead.pid))
+    (folder / ".running").write_text(str(os.getpid()))  # what a killed run leaves; its number may belong to another one now
     table = tmp_path / "t.csv"
     table.write_text('sample,smiles,c13\na,CCO,"58.0, 18.2"\n')
     assert run_triage(table, folder, **SETTINGS) == 0 and not (folder / ".running").exists()
