@@ -69,7 +69,7 @@ def build_ranking(
                 assignments=build_assignments(fits[k]),
                 unexplained=build_unexplained(fits[k]),
                 missing=build_missing(fits[k]),
-                decided_by="" if k == best else build_decision(fits[best], fits[k]),
+                decided_by="" if k == best else _name_candidates(build_decision(fits[best], fits[k])),
                 note="fits as well as the first" if close else "",
             )
         )
@@ -93,3 +93,8 @@ def build_ranking(
         steps=(*steps, f"{len(fits)} candidates compared, {len(failures)} could not be read"),
         failures=tuple(failures),
     )
+
+
+def _name_candidates(decision: str) -> str:
+    """In a list of candidates there is no proposal: say 'the first' for the best one and 'this one' for the other."""
+    return decision.replace("the proposal", "the first").replace("the rival", "this one")

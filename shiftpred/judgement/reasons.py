@@ -65,7 +65,8 @@ def _format_times(log_ratio: float) -> str:
     if log_ratio > math.log(1e6):
         return "more than a million times"
     ratio = math.exp(log_ratio)
-    return f"{ratio:,.0f} times" if ratio >= 10 else f"{ratio:.1f} times"
+    # Two figures: a likelihood ratio is not known better.
+    return f"{float(f'{ratio:.2g}'):,.0f} times" if ratio >= 9.95 else f"{ratio:.1f} times"
 
 
 def _describe_absolute_fit(fit: StructureFit, summary: FitSummary) -> tuple[float, str]:

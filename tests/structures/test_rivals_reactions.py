@@ -5,7 +5,7 @@ from rdkit import Chem
 from rdkit.Chem import rdChemReactions
 
 from shiftpred.structures.rivals import build_rivals
-from shiftpred.structures.rivals.reactions import SMALLEST_SHARE, load_reactions
+from shiftpred.structures.rivals.reactions import FURTHER_TABLE_NAME, SMALLEST_SHARE, load_reactions
 
 EXAMPLES = [
     # reaction, starting structure, what is expected; real compounds
@@ -145,3 +145,49 @@ def test_small_fragments_are_no_rivals():
     # ethanol is no rival of ethyl benzoate
     rivals = build_rivals(Chem.MolFromSmiles("CCOC(=O)c1ccccc1"), 100)
     assert min(Chem.MolFromSmiles(rival.smiles).GetNumAtoms() for rival in rivals) >= SMALLEST_SHARE * 11
+
+
+FURTHER_EXAMPLES = [
+    ("ring_methylated", "c1ccccc1", "Cc1ccccc1"),
+    ("ring_methyl_missing", "Cc1ccc(C)cc1", "Cc1ccccc1"),
+    ("ring_chlorinated", "c1ccccc1", "Clc1ccccc1"),
+    ("ring_brominated", "c1ccccc1", "Brc1ccccc1"),
+    ("ring_nitrated", "c1ccccc1", "O=[N+]([O-])c1ccccc1"),
+    ("nitro_missing", "O=C(O)c1cccc([N+](=O)[O-])c1", "O=C(O)c1ccccc1"),
+    ("ring_hydroxylated", "O=C(O)c1ccccc1", "O=C(O)c1ccccc1O"),
+    ("chain_longer", "CCOC(C)=O", "CCCOC(C)=O"),
+    ("chain_shorter", "CCCOC(C)=O", "CCOC(C)=O"),
+    ("benzyl_position_oxidised", "CCc1ccccc1", "CC(=O)c1ccccc1"),
+    ("methyl_oxidised", "Cc1ccccc1", "O=C(O)c1ccccc1"),
+    ("diaryl_ether_missing", "c1ccc(Oc2ccccc2)cc1", "Oc1ccccc1"),
+    ("phosphine_oxidised", "c1ccc(P(c2ccccc2)c2ccccc2)cc1", "O=P(c1ccccc1)(c1ccccc1)c1ccccc1"),
+    ("phosphine_oxide_reduced", "O=P(c1ccccc1)(c1ccccc1)c1ccccc1", "c1ccc(P(c2ccccc2)c2ccccc2)cc1"),
+    ("phosphorus_ester_hydrolysed", "CCOP(=O)(OCC)OCC", "CCOP(=O)(O)OCC"),
+    ("sulfonyl_missing", "Cc1ccc(S(N)(=O)=O)cc1", "Cc1ccccc1"),
+]
+
+
+@pytest.mark.parametrize(("name", "smiles", "expected"), FURTHER_EXAMPLES, ids=[e[0] for e in FURTHER_EXAMPLES])
+def test_every_further_reaction_gives_its_product(name, smiles, expected):
+    reaction = next(r for r in load_reactions(FURTHER_TABLE_NAME) if r.name == name)
+    products = set()
+    for (product,) in reaction.transform.RunReactants((Chem.MolFromSmiles(smiles),)):
+        Chem.SanitizeMol(product)
+        products.add(Chem.MolToSmiles(product))
+    assert Chem.CanonSmiles(expected) in products
+
+
+def test_every_further_reaction_has_an_example():
+    assert {r.name for r in load_reactions(FURTHER_TABLE_NAME)} == {e[0] for e in FURTHER_EXAMPLES}
+
+
+def test_further_reactions_come_last_and_only_where_the_mass_is_open():
+    stilbene = Chem.MolFromSmiles("C(=C/c1ccccc1)\\c1ccccc1")
+    how = [r.how for r in build_rivals(stilbene, 12)]
+    assert how[0] == "Z instead of E at a double bond"
+    assert "one methyl more on the ring" in how and how.index("one methyl more on the ring") >= 3
+    confirmed = build_rivals(stilbene, 12, mass_confirmed=True)
+    assert all(r.kind != "reaction" for r in confirmed)
+    drug = Chem.MolFromSmiles("CCN(CC)CC(=O)Nc1c(C)cccc1C")
+    further = {r.how for r in load_reactions(FURTHER_TABLE_NAME)}
+    assert not further & {r.how for r in build_rivals(drug, 20)}

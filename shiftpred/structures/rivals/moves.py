@@ -50,3 +50,6 @@ MOVES = (
     Move(stereo.build_turned_double_bonds, "stereoisomer", 0.15, 0.12),
     Move(reactions.build_reaction_neighbours, "reaction", 0.15, 0.10),
 )
+
+FURTHER_REACTIONS = Move(reactions.build_further_neighbours, "reaction", 0.3, 0.05)
+"""Tried last, where everything else gives fewer rivals than wanted and the mass is not confirmed."""

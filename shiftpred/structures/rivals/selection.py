@@ -11,7 +11,7 @@ from shiftpred.errors import SettingError, StructureError, quote
 from shiftpred.records import Rival, Structure
 from shiftpred.structures.rivals.admission import Gate, compute_mirror_key, join_components
 from shiftpred.structures.rivals.candidate_queues import CandidateQueues
-from shiftpred.structures.rivals.moves import MOVES
+from shiftpred.structures.rivals.moves import FURTHER_REACTIONS, MOVES
 from shiftpred.structures.rivals.plausibility import PlausibilityFilter
 from shiftpred.structures.rivals.tautomers import build_tautomers
 from shiftpred.structures.rivals.workspace import Workspace
@@ -40,8 +40,9 @@ def build_rivals(
 
     Isomers (substituents walked or swapped on a ring, ring heteroatoms walked, groups turned round, N against O, azole
     nitrogens, chains branched, multiple bonds walked), stereoisomers that NMR can see, and, unless the mass is
-    confirmed, the neighbours by reaction. Where that is not enough, further moves on top of the nearest isomers. In a
-    mixture or salt the component with the most carbons is varied and the others stay.
+    confirmed, the neighbours by reaction. Where that is not enough, further moves on top of the nearest isomers, then
+    neighbours by further reactions (over-reaction, homologues), unless the mass is confirmed. In a mixture or salt the
+    component with the most carbons is varied and the others stay.
 
     Parameters
     ----------
@@ -191,6 +192,11 @@ def _select(main: str, others: str, limit: int, mass_confirmed: bool, taken: set
         starts = starts[: max(fewest, min(most, limit // 5))]
         more, starts = _further_round(starts, limit - len(rivals), proposal, gate)
         rivals += more
+    if len(rivals) < limit and not mass_confirmed:
+        queues = CandidateQueues(Workspace(main), [FURTHER_REACTIONS], proposal, gate)
+        while len(rivals) < limit and (found := queues.pop()) is not None:
+            _, examined, move, candidate = found
+            rivals.append(Rival(examined.smiles, candidate.how(), move.kind))
     return rivals
 
 
