@@ -12,7 +12,7 @@ from shiftpred.cli.options import traceback_option
 
 __all__ = ["command"]
 
-COMMANDS = ("predict", "compare", "rank", "explain", "substituent", "triage", "serve", "train", "evaluate")
+COMMANDS = ("predict", "compare", "rank", "explain", "substituent", "triage", "serve", "train", "evaluate", "guide")
 """In the order of the help page; each in the file of its name."""
 
 

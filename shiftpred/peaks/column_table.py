@@ -120,8 +120,11 @@ def parse_column_table(text: str, nucleus: str) -> tuple[PeakList, list[tuple[st
         notes.append(f"columns not used: {', '.join(unused)}")
     solvent, frequency = _read_comments(text, nucleus, notes)
     peaks: list[Peak] = []
-    for number, line in lines[1:]:
-        row = line.split() if delimiter == " " else next(csv.reader(io.StringIO(line), delimiter=delimiter))
+    rows = [(number, line, _split_row(line, delimiter)) for number, line in lines[1:]]
+    decimal_commas = delimiter != "," and _has_decimal_commas([row for _, _, row in rows], columns)
+    if decimal_commas:
+        notes.append("decimal commas read as decimal points")
+    for number, line, row in rows:
         if not any(cell.strip() for cell in row):
             continue
         try:
@@ -131,6 +134,8 @@ def parse_column_table(text: str, nucleus: str) -> tuple[PeakList, list[tuple[st
                     + (": decimal comma?" if delimiter == "," and len(row) == len(columns) + 1 else "")
                 )
             cells = {c: cell.strip() for c, cell in zip(columns, row) if c}
+            if decimal_commas:
+                cells = {c: _replace_commas(cell) if c in _DECIMALS else cell for c, cell in cells.items()}
             peak, labels = parse_row(cells, nucleus, len(peaks) + 1, line.strip())
         except ValueError as error:
             problems.append((f"line {number}", line.strip(), str(error)))
@@ -139,6 +144,27 @@ def parse_column_table(text: str, nucleus: str) -> tuple[PeakList, list[tuple[st
         if labels:
             notes.append(f"peak {len(peaks)}: assignment '{labels}' is a label, not an atom number; kept as text")
     return PeakList(nucleus, tuple(peaks), solvent, frequency, text, tuple(notes)), problems
+
+
+def _split_row(line: str, delimiter: str) -> list[str]:
+    return line.split() if delimiter == " " else next(csv.reader(io.StringIO(line), delimiter=delimiter))
+
+
+_DECIMALS = ("shift_ppm", "integral", "j_hz", "pair_ppm")
+"""Columns whose cells may hold decimals."""
+
+
+def _has_decimal_commas(rows: list[list[str]], columns: list[str | None]) -> bool:
+    """Say whether the shifts are written with decimal commas throughout, as a German Excel exports them.
+
+    One decimal point among them, and the commas stay what they are: refused, because nobody can tell what they mean.
+    """
+    shifts = [cell.strip() for row in rows for c, cell in zip(columns, row) if c in ("shift_ppm", "pair_ppm")]
+    return any("," in cell for cell in shifts) and not any("." in cell for cell in shifts)
+
+
+def _replace_commas(cell: str) -> str:
+    return re.sub(r"(?<=\d),(?=\d)", ".", cell)
 
 
 def _read_comments(text: str, nucleus: str, notes: list[str]) -> tuple[str | None, float | None]:
