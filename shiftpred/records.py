@@ -315,6 +315,12 @@ class Comparison:
 
         return render_comparison_html(self)
 
+    def _repr_html_(self) -> str:
+        """The report as Jupyter shows it."""
+        from shiftpred.reporting import render_notebook_frame
+
+        return render_notebook_frame(self.to_html())
+
 
 @dataclass(frozen=True)
 class RankedCandidate:
@@ -354,6 +360,12 @@ class Ranking:
     failures: tuple[RecordFailure, ...] = ()
     """Candidates that could not be read; their positions count all the same."""
 
+    def _repr_html_(self) -> str:
+        """The report as Jupyter shows it."""
+        from shiftpred.reporting import render_notebook_frame, render_ranking_html
+
+        return render_notebook_frame(render_ranking_html(self))
+
 
 @dataclass(frozen=True)
 class Contribution:
@@ -391,3 +403,9 @@ class Explanation:
     contributions: tuple[Contribution, ...]
     model: str
     notes: tuple[str, ...] = ()
+
+    def _repr_html_(self) -> str:
+        """The report as Jupyter shows it."""
+        from shiftpred.reporting import render_explanation_html, render_notebook_frame
+
+        return render_notebook_frame(render_explanation_html(self), height=520)

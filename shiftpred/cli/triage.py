@@ -18,11 +18,26 @@ from shiftpred.cli.options import coverage_option, fail_on_option, model_option,
 @click.option("--prior", type=float, default=0.5, show_default=True, metavar="P")
 @click.option("--processes", type=click.IntRange(min=1), default=2, show_default=True, metavar="N")
 @click.option("--scheduler", metavar="ADDRESS", help="Send the work to this scheduler instead of to local processes.")
+@click.option(
+    "--format",
+    "format_",
+    type=click.Choice(["csv", "xlsx"]),
+    default="csv",
+    show_default=True,
+    help="Form of the summary; xlsx writes summary.xlsx beside summary.csv.",
+)
 @fail_on_option
 @model_option
 @traceback_option
-def command(samples, output, frequency, **options) -> int:
+def command(samples, output, frequency, format_, **options) -> int:
     """Judge every sample of SAMPLES, a table (sample, smiles, c13, h1, solvent) or a folder of files."""
     from shiftpred.triage import run_triage
 
-    return run_triage(samples, output, frequency_mhz=frequency, **options)
+    if format_ == "csv":
+        return run_triage(samples, output, frequency_mhz=frequency, **options)
+    from shiftpred.triage.workbook import require_openpyxl, save_summary_workbook
+
+    require_openpyxl()  # before the work, not after it
+    code = run_triage(samples, output, frequency_mhz=frequency, **options)
+    save_summary_workbook(output)
+    return code

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import lru_cache
+from html import escape
 from math import isfinite, nan
 
 from shiftpred.electronics import group_electronegativity as methods
@@ -67,6 +68,15 @@ class SubstituentConstants:
 
     def __str__(self) -> str:
         return render_substituent_text(self).rstrip("\n")
+
+    def _repr_html_(self) -> str:
+        """The constants as a table, as Jupyter shows them."""
+        heads = ("constant", "value", "unit", "scale", "origin", "source")
+        rows = [(v.name, f"{v.value:.3f}", v.unit, v.scale, v.origin, v.source) for v in self.values]
+        rows += [(u.name, "not defined", "", u.scale, "", u.reason) for u in self.undefined]
+        lines = ["<tr>" + "".join(f"<td style='text-align:left'>{escape(str(c))}</td>" for c in row) + "</tr>" for row in rows]
+        head = "".join(f"<th style='text-align:left'>{name}</th>" for name in heads)
+        return f"<table><caption>{escape(self.smiles)}</caption><thead><tr>{head}</tr></thead><tbody>{''.join(lines)}</tbody></table>"
 
     def to_dict(self) -> dict[str, object]:
         """Return plain dictionaries, lists, texts and numbers."""

@@ -30,6 +30,7 @@ _HOME = {
     "render_explanation_text": "shiftpred.reporting.text.explanation",
     "render_json": "shiftpred.reporting.json_text",
     "render_lane_svg": "shiftpred.reporting.pictures",
+    "render_notebook_frame": "shiftpred.reporting.notebooks",
     "render_prediction_csv": "shiftpred.reporting.prediction_rows",
     "render_prediction_html": "shiftpred.reporting.pages",
     "render_prediction_table": "shiftpred.reporting.text.prediction",
