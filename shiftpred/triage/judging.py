@@ -103,7 +103,7 @@ def _compare(sample: Sample, settings: dict, folder: Path, date: str) -> dict:
         own["solvent"] = sample.solvent
     if sample.frequency:
         try:
-            own["frequency_mhz"] = float(sample.frequency)
+            own["frequency_mhz"] = float(sample.frequency.replace(",", "."))  # 400,13 as a German Excel has it
         except ValueError:
             raise InputError(f"sample {sample.name}, frequency", repr(sample.frequency), "a number of MHz", "400") from None
     comparison = compare(structure, **peaks, **own)

@@ -100,3 +100,30 @@ def test_decimal_commas_elsewhere_are_refused_with_a_hint(text):
 def test_assignments_in_a_decimal_comma_table_stay_lists():
     read = parse_peaks("shift_ppm;assignment\n129,5;7,11\n60,9;2\n", "13C")
     assert [p.assignment for p in read.peaks] == [(7, 11), (2,)]
+
+
+def test_semicolon_table_with_decimal_commas_one_row_judged_one_refused(tmp_path):
+    queue, night = tmp_path / "queue.csv", tmp_path / "night"
+    queue.write_text(
+        "sample;smiles;c13;frequency\r\nright;CCO;58.0, 18.2;400,13\r\nwrong;CCO;58,0;400,13\r\n", encoding="utf-8"
+    )
+    words = ["triage", str(queue), "--output", str(night), "--processes", "1", "--rivals", "1"]
+    assert CliRunner().invoke(command, words).exit_code == 3
+    with open(night / "summary.csv", encoding="utf-8", newline="") as handle:
+        rows = {row["sample"]: row for row in csv.DictReader(handle)}
+    assert rows["right"]["judgement"] and not rows["right"]["note"]
+    assert not rows["wrong"]["judgement"] and "decimal comma" in rows["wrong"]["note"]
+
+
+def test_unicode_text_of_excel(tmp_path):
+    samples = list(parse_samples(write_text(tmp_path / "queue.txt", "\t", "utf-16")))
+    assert [s.name for s in samples] == ["A-1", "=A-2"]
+
+
+def test_table_without_openpyxl_is_refused_before_the_work(tmp_path, monkeypatch):
+    import sys
+
+    monkeypatch.setitem(sys.modules, "openpyxl", None)
+    queue, night = write_text(tmp_path / "queue.csv", ","), tmp_path / "night"
+    result = CliRunner().invoke(command, ["triage", str(queue), "--output", str(night), "--format", "xlsx"])
+    assert result.exit_code == 2 and "shiftpred[tables]" in result.stderr and not night.exists()
