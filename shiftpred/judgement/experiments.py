@@ -30,11 +30,19 @@ def propose_experiment(proposal: MoleculePrediction, rival: MoleculePrediction) 
     -------
     str
         Tried in this order: mass, hydrogen counts (DEPT or HSQC), E/Z couplings, NOE from a methyl or methylene on an aromatic
-        ring, HMBC, NOE for relative configuration.
+        ring, splitting of the benzene hydrogens, HMBC, NOE for relative configuration.
     """
     if proposal.structure.smiles == rival.structure.smiles:
         return ""
-    for propose in (_by_mass, _by_hydrogen_counts, _by_double_bond, _by_overhauser, _by_long_range, _by_configuration):
+    for propose in (
+        _by_mass,
+        _by_hydrogen_counts,
+        _by_double_bond,
+        _by_overhauser,
+        _by_splitting,
+        _by_long_range,
+        _by_configuration,
+    ):
         text = propose(proposal, rival)
         if text:
             return text
@@ -120,6 +128,35 @@ def _ortho_neighbours(prediction) -> dict[str, tuple[str, ...]]:
                             _describe_ortho(mol, ring_atom, neighbour)
                         )
     return {name: tuple(sorted(words)) for name, words in found.items()}
+
+
+def _by_splitting(proposal, rival) -> str:
+    """Count the hydrogens of the benzene rings by the large couplings that split them: 1,3 and 1,4 look different."""
+    ours, theirs = _benzene_splittings(proposal), _benzene_splittings(rival)
+    if ours == theirs:
+        return ""
+    return (
+        f"the splitting of the aromatic hydrogens in the 1H spectrum decides: {_describe_splittings(ours)} in the proposal, "
+        f"{_describe_splittings(theirs)} in the rival (counting couplings of {_ORTHO_HZ} only)"
+    )
+
+
+def _benzene_splittings(prediction) -> Counter:
+    """Return 'singlet', 'doublet', 'triplet' → number of hydrogens on benzene rings with so many ortho hydrogens."""
+    mol = prediction.structure.mol
+    found: Counter = Counter()
+    for ring in mol.GetRingInfo().AtomRings():
+        atoms = [mol.GetAtomWithIdx(i) for i in ring]
+        if len(ring) == 6 and all(a.GetIsAromatic() and a.GetAtomicNum() == 6 for a in atoms):
+            for place, atom in enumerate(atoms):
+                if atom.GetTotalNumHs() == 1:
+                    beside = (atoms[place - 1], atoms[(place + 1) % 6])
+                    found[("singlet", "doublet", "triplet")[sum(a.GetTotalNumHs() for a in beside)]] += 1
+    return found
+
+
+def _describe_splittings(found: Counter) -> str:
+    return " and ".join(f"{name} ({n}H)" for name, n in sorted(found.items())) or "no aromatic hydrogen"
 
 
 def _describe_ortho(mol, ring_atom, substituent) -> set[str]:

@@ -29,6 +29,11 @@ _MIXTURE_FROM = 2
 """Unexplained lines from which a mixture is suspected."""
 _IONISED_BETTER_BY = 3.0
 """Log likelihood by which an ionised form must fit better before it is mentioned."""
+_CLEARLY_BETTER = math.log(3.0)
+"""Log likelihood by which a structure must beat its nearest rival before it is supported, whatever its probability; a ratio
+below 3 is not worth more than a bare mention (Kass and Raftery, J. Am. Stat. Assoc. 1995, 90, 773)."""
+_FEWEST_LINES = 0.5
+"""Lines for each set of equivalent nuclei below which a list is too short to decide (common practice, no source)."""
 _DECISIONS = 5
 """Rivals, nearest first, for which what would decide is worked out."""
 
@@ -61,7 +66,7 @@ def decide_judgement(
         and own.missing <= gate["missing"]
         and own.lines > 0
     )
-    if probability >= judgement_map.supported_from and passes and margin > 0:
+    if probability >= judgement_map.supported_from and passes and margin >= _CLEARLY_BETTER:
         return "supported", "", probability
     if probability <= judgement_map.contradicted_to or (margin <= -_OVERWHELMED and probability <= _DOUBTED):
         return "contradicted", "", probability
@@ -70,7 +75,9 @@ def decide_judgement(
         code = "outside_training_data"
     elif own.extra >= _MIXTURE_FROM or (several_components and alone < judgement_map.supported_from):
         code = "mixture_or_salt"
-    elif alone >= judgement_map.supported_from or margin < 1.0:
+    elif own.lines < _FEWEST_LINES * own.units:
+        code = "too_little_evidence"
+    elif alone >= judgement_map.supported_from or margin < _CLEARLY_BETTER:
         code = "rival_fits"
     else:
         code = "too_little_evidence"

@@ -55,6 +55,8 @@ def build_reasons(
 
 
 def _describe_rival(margin: float, nearest: Rival) -> str:
+    if abs(margin) < math.log(2.0):
+        return f"fits about as well as its nearest rival {nearest.smiles} ({nearest.how})"
     times = _format_times(abs(margin))
     if margin >= 0:
         return f"fits {times} better than its nearest rival {nearest.smiles} ({nearest.how})"

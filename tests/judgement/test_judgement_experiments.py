@@ -52,3 +52,11 @@ def test_long_range_correlations_for_n_or_o():
 def test_always_a_text_for_different_structures_and_none_for_the_same(ours, theirs):
     text = propose(ours, theirs)
     assert bool(text) == (ours == "Cc1cccc(Cl)c1C#N")
+
+
+def test_meta_and_para_by_their_splitting():
+    text = propose("COC(=O)c1cccc([N+](=O)[O-])c1", "COC(=O)c1ccc([N+](=O)[O-])cc1")
+    assert text.startswith("the splitting of the aromatic hydrogens in the 1H spectrum decides")
+    before, after = text.split(" in the proposal")
+    assert "doublet (2H) and singlet (1H) and triplet (1H)" in before
+    assert "doublet (4H)" in after

@@ -87,3 +87,20 @@ def test_damaged_parameters_are_refused():
         build_judgement_map(parameters)
     with pytest.raises(BundleError):
         build_judgement_map({"format": 99})
+
+
+def test_no_structure_is_supported_beside_a_rival_that_fits_as_well():
+    sure = replace(MAP, supported_from=0.0, contradicted_to=-1.0)
+    for margin, judgement in ((0.0, "open"), (1.0, "open"), (1.2, "supported")):
+        rival = replace(GOOD, log_evidence=GOOD.log_evidence - margin)
+        assert decide_judgement([GOOD, rival], "13C", sure, 0.999)[0] == judgement
+    assert decide_judgement([GOOD], "13C", sure, 0.999)[0] == "supported", "no rival at all"
+
+
+def test_a_list_of_a_few_lines_is_too_little_evidence():
+    few = replace(GOOD, lines=2, missing=8, log_evidence=-11.0)
+    undecided = replace(MAP, supported_from=0.999999, contradicted_to=-1.0)
+    assert decide_judgement([few, replace(few, log_evidence=-10.0)], "13C", undecided, 0.5)[:2] == (
+        "open",
+        "too_little_evidence",
+    )
