@@ -408,4 +408,4 @@ class Explanation:
         """The report as Jupyter shows it."""
         from shiftpred.reporting import render_explanation_html, render_notebook_frame
 
-        return render_notebook_frame(render_explanation_html(self), height=520)
+        return render_notebook_frame(render_explanation_html(self), height=820)

@@ -61,6 +61,8 @@ def render_schema_page() -> str:
 def _find_description(value: dict, schema: dict) -> str:
     if "description" in value:
         return value["description"]
+    if "const" in value:
+        return f"Always `{value['const']}`."
     if "$ref" in value:
         target = schema
         for step in value["$ref"].removeprefix("#/").split("/"):
