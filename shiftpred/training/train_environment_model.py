@@ -39,7 +39,10 @@ class NetworkSettings:
     layers: int = 6
     message: int = 128
     hidden: int = 384
-    passes: int = 54
+    passes: int = 68
+    restart: int = 54
+    """Pass after which the learning rate, down to nothing by then, starts once more at half its height (Loshchilov & Hutter, SGDR,
+    ICLR 2017); a run of fewer passes has no restart."""
     first_passes: int = 2
     """Passes on the first assignment (by the substituent model, or of the unambiguous peaks alone)."""
     batch: int = 48
@@ -189,7 +192,8 @@ def _work(rank: int, job: _Job) -> None:
     watch = [i for i, c in enumerate(job.compounds) if c.split == "calibration"]
     all_samples = samples = np.array([(i, s) for i in train for s in range(len(job.compounds[i].samples))], dtype=np.int64)
     assignments: list[np.ndarray] | None = None
-    middle = (settings.passes - settings.first_passes) // 2 if job.starting_weights is None else 1
+    first_end = min(settings.restart, settings.passes)
+    middle = (first_end - settings.first_passes) // 2 if job.starting_weights is None else 1
     for number in range(first, settings.passes):
         begun = time.time()
         start = number < settings.first_passes and job.starting_weights is None
@@ -217,10 +221,9 @@ def _work(rank: int, job: _Job) -> None:
         bar = show_progress(range(steps), f"pass {number + 1}/{settings.passes}: fit", wanted=rank == 0)
         for step in bar:
             mine = order[step * settings.batch : (step + 1) * settings.batch][rank :: job.processes]
-            done = max(0, number - settings.first_passes) + step / steps
-            part = done / max(1, settings.passes - settings.first_passes)
+            share = 1.0 if start else _compute_share_of_rate(number + step / steps, settings)
             for group in optimiser.param_groups:
-                group["lr"] = settings.learning_rate * (1.0 if start else _schedule(part))
+                group["lr"] = settings.learning_rate * share
             optimiser.zero_grad(set_to_none=True)
             loss, known = _batch_loss(network, mine, job, placers, assignments)
             loss.backward()
@@ -252,9 +255,15 @@ def _work(rank: int, job: _Job) -> None:
         distributed.destroy_process_group()
 
 
-def _schedule(part: float) -> float:
-    """Return the share of the learning rate at `part` (0 to 1) of the run: a short rise, then a cosine down to nothing."""
-    return min(1.0, part / 0.02 + 0.05) * 0.5 * (1 + math.cos(math.pi * min(1.0, part)))
+def _compute_share_of_rate(done: float, settings: NetworkSettings) -> float:
+    """Return the share of the learning rate after so many passes: a short rise and a cosine down to nothing, and the same once
+    more at half the height after the restart."""
+    end = min(settings.restart, settings.passes)
+    if done < end:
+        part, height = (done - settings.first_passes) / max(1, end - settings.first_passes), 1.0
+    else:
+        part, height = (done - end) / max(1, settings.passes - end), 0.5
+    return height * min(1.0, part / 0.02 + 0.05) * 0.5 * (1 + math.cos(math.pi * min(1.0, part)))
 
 
 def _assign_all(model, job, placers, watch, rank, label_order, what):

@@ -163,3 +163,13 @@ def test_removed_chemistry_is_removed(archive, tmp_path):
     assert found == {"rest": [3, 5], "silicon": [1], "selenium": [], "boron": [], "indoles": [2], "cyclopropanes": [4]}
     assert pd.read_csv(parts["rest"] / "peaks.csv").compound.tolist() == [3, 5]
     assert all(Chem.MolFromSmarts(s) is not None for s in REMOVED.values())
+
+
+def test_the_learning_rate_falls_to_nothing_twice():
+    from shiftpred.training.train_environment_model import NetworkSettings, _compute_share_of_rate
+
+    full = NetworkSettings(passes=20, restart=14, first_passes=2)
+    shares = [_compute_share_of_rate(done, full) for done in (2, 2.5, 8, 13.99, 14, 14.5, 17, 19.99)]
+    assert shares == pytest.approx([0.05, 1.0, 0.5, 0.0, 0.025, 0.49, 0.25, 0.0], abs=0.02)
+    short = NetworkSettings(passes=4, restart=14, first_passes=2)
+    assert _compute_share_of_rate(3.99, short) == pytest.approx(0, abs=1e-3)
