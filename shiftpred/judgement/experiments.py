@@ -87,8 +87,24 @@ def _by_double_bond(proposal, rival) -> str:
     if ours == theirs:
         return ""
     if any(both for _, both in ours | theirs):
+        if _has_only_alike_ends(proposal):
+            return (
+                "the coupling across the double bond decides (about 16 Hz for trans, about 10 Hz for cis), read from the 13C "
+                "satellites in the 1H spectrum, as its two hydrogens are equivalent"
+            )
         return "the coupling across the double bond decides (about 16 Hz for trans, about 10 Hz for cis)"
     return "an NOE across the double bond decides (between groups on the same side)"
+
+
+def _has_only_alike_ends(prediction) -> bool:
+    """Tell whether the two hydrogens are equivalent at every CH=CH with a configuration, so that they do not split each other."""
+    pairs = [
+        (bond.GetBeginAtom(), bond.GetEndAtom())
+        for bond in prediction.structure.mol.GetBonds()
+        if bond.GetStereo() > Chem.BondStereo.STEREOANY
+    ]
+    pairs = [(a.GetIdx(), b.GetIdx()) for a, b in pairs if a.GetTotalNumHs() == 1 and b.GetTotalNumHs() == 1]
+    return all(prediction.sites[a].equivalent == prediction.sites[b].equivalent for a, b in pairs)
 
 
 def _double_bond_kinds(mol) -> set[tuple]:

@@ -142,7 +142,7 @@ def build_comparison(
         reason_code=code,
         probability=probability,
         likelihood_ratio=math.exp(min(max(margin, -700.0), 700.0)) if margin is not None else math.inf,
-        reasons=_put_judgement_first(judgement, code, described, reasons, judgement_map),
+        reasons=_put_judgement_first(judgement, code, described, reasons, margin),
         assignments=build_assignments(proposal),
         unexplained=build_unexplained(proposal),
         missing=build_missing(proposal),
@@ -179,11 +179,13 @@ _CODE_WORDS = {
 }
 
 
-def _put_judgement_first(judgement, code, rivals, reasons, judgement_map) -> tuple[str, ...]:
+def _put_judgement_first(judgement, code, rivals, reasons, margin) -> tuple[str, ...]:
     """An open judgement starts with why it is open, and with what would decide it."""
     if judgement != "open":
         return reasons
     first = [_CODE_WORDS[code]]
+    if code == "rival_fits" and margin is not None and margin < -_CLEARLY_BETTER:
+        first[0] = "open: a rival fits better, but not so much that the lines exclude the proposal"
     if code == "rival_fits" and rivals:
         first[0] += f" ({rivals[0].smiles}, {rivals[0].how}); {rivals[0].decided_by}"
     return (*first, *reasons)

@@ -147,3 +147,16 @@ def test_the_ionised_form_is_mentioned_where_it_fits_better():
         [(assign_structure(salt, ready), "amine protonated")],
     )
     assert any("ionised form (amine protonated)" in c for c in found.cautions)
+
+
+def test_an_open_judgement_never_says_as_well_of_a_rival_that_fits_much_better():
+    better = build_prediction("COC(=O)Cc1ccccc1", {0: 60.9, 2: 166.6, 4: 14.3, 5: 130.5, 6: 129.5, 7: 128.3, 8: 132.8})
+    own = build_prediction("CCOC(=O)c1ccccc1", {0: 14.3, 1: 60.9, 3: 166.6, 5: 128.3, 6: 129.5, 7: 130.5, 8: 136.5})
+    ready = prepare_peaks({"13C": build_peaks("13C", *LIST)}, "CDCl3")
+    fits = [assign_structure(p, ready) for p in (own, better)]
+    undecided = replace(MAP, supported_from=1.0, contradicted_to=-1.0)
+    rivals = [Rival(better.structure.smiles, "another ester", "isomer")]
+    found = build_comparison(own.structure, build_settings(), ready, fits, rivals, undecided)
+    assert 1 / 3000 < found.likelihood_ratio < 1 / 3
+    assert (found.judgement, found.reason_code) == ("open", "rival_fits")
+    assert "a rival fits better" in found.reasons[0]

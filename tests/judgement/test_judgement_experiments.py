@@ -36,6 +36,8 @@ def test_hydrogen_counts():
 
 def test_double_bonds():
     assert "about 16 Hz" in propose("C/C=C/C(=O)O", "C/C=C\\C(=O)O")
+    assert "13C satellites" in propose("C(=C/c1ccccc1)\\c1ccccc1", "C(=C\\c1ccccc1)\\c1ccccc1"), "equivalent hydrogens"
+    assert "13C satellites" not in propose("C/C=C/C(=O)O", "C/C=C\\C(=O)O")
     assert "NOE across the double bond" in propose("C/C(CC)=C(/C)C(=O)O", "C/C(CC)=C(\\C)C(=O)O")
 
 
