@@ -28,6 +28,7 @@ def test_there_are_two_notebooks_without_stored_outputs():
         assert all(not cell.get("outputs") and cell.get("execution_count") is None for cell in load(name).cells)
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("name", NOTEBOOKS)
 def test_notebook_runs_from_top_to_bottom(name, tmp_path):
     nbclient = pytest.importorskip("nbclient")
