@@ -30,7 +30,9 @@ def render_command_page() -> str:
             lines += [f"## {name}", "", f"`{' '.join(one.get_usage(ctx).removeprefix('Usage:').split())}`", ""]
             lines += [" ".join(part.split()) + "\n" for part in (one.help or "").split("\n\n")]
             records = [
-                (p, p.get_help_record(ctx)) for p in one.get_params(ctx) if isinstance(p, click.Option) and p.name != "help"
+                (p, p.get_help_record(ctx))
+                for p in one.get_params(ctx)
+                if isinstance(p, click.Option) and "--help" not in p.opts
             ]
             lines += ["| option | meaning |", "|---|---|"]
             lines += [f"| `{_escape(record[0])}` | {_escape(record[1])} |" for p, record in records if record and not p.hidden]
