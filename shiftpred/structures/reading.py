@@ -29,6 +29,8 @@ _SUFFIXES = _LINE_SUFFIXES + _TABLE_SUFFIXES + _BLOCK_SUFFIXES
 _NAME_COLUMNS = ("name", "molecule", "sample", "title", "id", "compound")
 _LINES_LOOKED_AT = 12
 _WIDEST_CELL = 131_072
+_LONGEST_LINE_KEPT = 500_000
+"""Characters; the rest of a longer line is passed over, so that a small archive that unpacks to one endless line fits too."""
 
 # One stray byte of another encoding (an umlaut in a name) costs neither the line nor the file.
 codecs.register_error("shiftpred-latin-1", lambda error: (error.object[error.start : error.end].decode("latin-1"), error.end))
@@ -291,16 +293,25 @@ def _parse_bytes(raw, where: str, suffix: str) -> Iterator[Structure | RecordFai
         )
     text = io.TextIOWrapper(raw, encoding=encoding, errors="shiftpred-latin-1")
     try:
+        lines = _iterate_lines(text)
         if suffix in _TABLE_SUFFIXES:
-            yield from _parse_table(text, where, "\t" if suffix == ".tsv" else None)
+            yield from _parse_table(lines, where, "\t" if suffix == ".tsv" else None)
         elif suffix in _BLOCK_SUFFIXES:
-            yield from parse_blocks(text, where)
+            yield from parse_blocks(lines, where)
         else:
-            yield from _parse_lines_of_any_kind(text, where)
+            yield from _parse_lines_of_any_kind(lines, where)
     except EOFError:
         raise InputError(where, "a gzip file that ends too soon", "a complete file", "copy it again") from None
     finally:
         text.detach()
+
+
+def _iterate_lines(text) -> Iterator[str]:
+    """Yield lines, each cut to `_LONGEST_LINE_KEPT` characters."""
+    while line := text.readline(_LONGEST_LINE_KEPT):
+        yield line
+        while len(line) == _LONGEST_LINE_KEPT and line[-1] != "\n":
+            line = text.readline(_LONGEST_LINE_KEPT)
 
 
 def _parse_lines_of_any_kind(lines: Iterable[str], where: str) -> Iterator[Structure | RecordFailure]:

@@ -71,15 +71,15 @@ import itertools, json
 from shiftpred.bundles import load_bundle, model_bundle as m
 folder = m.Path({str(folder)!r})
 bundle = load_bundle(folder)
-arrays = {{k: m.np.zeros(60_000) for k in "ab"}}
+last = int(bundle.edition.split()[1]) if bundle.edition.split()[1].isdigit() else 0
 real = {{f: (folder / f).read_bytes() for f in m._CHECKED}}
 unpacked = m._unpack(real[m._ARRAYS], folder)
 substituents = m._unpack(real[m._SUBSTITUENTS], folder)
 print("begun", flush=True)
-for k in itertools.count(1):
+for k in itertools.count(last + 1):
     def pack(arrays):
         buffer = m.io.BytesIO()
-        m.np.savez(buffer, **arrays, mark=m.np.full(1, k))
+        m.np.savez(buffer, **arrays | dict(mark=m.np.full(1, k)))
         return buffer.getvalue()
     contents = {{
         m._ARRAYS: pack(unpacked),
@@ -99,7 +99,7 @@ for k in itertools.count(1):
         if found.edition != shipped.edition:
             assert found.judgement == dict(mark=int(found.manifest["edition"]))
         assert found.substituent_model is not None
-    assert len(editions) > 3
+    assert len(editions) > 20
 
 
 @pytest.mark.parametrize("processes, times", [(1, 60), (2, 40)])
