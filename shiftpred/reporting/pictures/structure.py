@@ -65,7 +65,8 @@ def render_structure_svg(
     options.annotationFontScale = 0.8
     options.minFontSize = 12
     options.maxFontSize = 18
-    options.setAtomNoteColour(_NUMBER_COLOUR)
+    if hasattr(options, "setAtomNoteColour"):  # not in the oldest RDKit that is supported: numbers in black there
+        options.setAtomNoteColour(_NUMBER_COLOUR)
     options.addStereoAnnotation = False
     options.simplifiedStereoGroupLabel = False
     if numbers:
