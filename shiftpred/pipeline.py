@@ -148,9 +148,10 @@ def compare(structure, c13=None, h1=None, solvent: str | None = None, model=None
 
     Parameters
     ----------
-    structure : str, path, rdkit Mol or Structure
+    structure : str, path, rdkit Mol, Structure or NmredataRecord
+        An NMReDATA file brings its peaks and an assignment of its own, which is checked.
     c13, h1 : str, path, iterable of numbers, PeakList or None
-        Plain numbers, journal text or a file; None: not measured.
+        Plain numbers, journal text or a file; None: not measured. Where both are None, an NMReDATA file's own are taken.
     solvent : str, optional
         Any common spelling; None: the one that a list's heading states, if any.
     model : str or ModelBundle, optional
@@ -176,22 +177,28 @@ def compare(structure, c13=None, h1=None, solvent: str | None = None, model=None
     'supported'
     """
     from shiftpred.judgement import (
+        add_given_assignment,
         build_comparison,
         build_ionised_structures,
         build_judgement_map,
         build_settings,
+        choose_lists,
         read_sample,
     )
+    from shiftpred.peaks.nmredata import find_nmredata
     from shiftpred.structures.rivals import build_rivals
 
     bundle, asked = load_model(model), build_settings(solvent=solvent, **settings)
-    proposal, peaks = parse_structure(structure), read_sample(c13, h1, asked)
+    given = find_nmredata(structure)
+    proposal = parse_structure(given.structure if given else structure)
+    peaks = read_sample(*choose_lists(given, c13, h1), asked)
     rivals = build_rivals(proposal, asked.rivals, asked.mass_confirmed)
     forms = build_ionised_structures(proposal)
     read = [proposal, *parse_listed_structures(r.smiles for r in rivals), *(form for form, _ in forms)]
     fits = _assign_structures(read, peaks, asked, bundle)
     main, ionised = fits[: 1 + len(rivals)], [(fit, how) for fit, (_, how) in zip(fits[1 + len(rivals) :], forms)]
-    return build_comparison(proposal, asked, peaks, main, rivals, build_judgement_map(bundle.judgement), ionised)
+    found = build_comparison(proposal, asked, peaks, main, rivals, build_judgement_map(bundle.judgement), ionised)
+    return add_given_assignment(found, given)
 
 
 def _assign_structures(read: list[Structure], peaks, asked, bundle: ModelBundle) -> list:

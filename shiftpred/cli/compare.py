@@ -29,18 +29,21 @@ def command(structure, c13, h1, fail_on, format_, output, sample, reviewer, date
     """Compare the measured peaks with STRUCTURE: assignment, leftovers, rivals, judgement.
 
     STRUCTURE is a SMILES, a file with one record, or - for standard input. PEAKS are a file or a text, plain numbers or as
-    journals print them: '13C NMR (101 MHz, CDCl3) δ 166.6, 132.8, 129.5 (2C)', 'δ 4.38 (q, J = 7.1 Hz, 2H)'.
+    journals print them: '13C NMR (101 MHz, CDCl3) δ 166.6, 132.8, 129.5 (2C)', 'δ 4.38 (q, J = 7.1 Hz, 2H)'. An NMReDATA
+    file as STRUCTURE brings its own peaks, and its assignment is checked.
     """
     from shiftpred.cli.boundary import print_message
     from shiftpred.cli.output import choose_format, write_result
     from shiftpred.cli.peak_lists import read_peak_options
+    from shiftpred.peaks.nmredata import find_nmredata
     from shiftpred.pipeline import compare
     from shiftpred.reporting import compute_comparison_dict, render_verdict_line
     from shiftpred.structures import parse_structure
 
     chosen = choose_format(format_, output, FORMATS)
-    peaks = read_peak_options(c13, h1)
-    comparison = compare(parse_structure(structure), **peaks, **build_settings(options))
+    given = find_nmredata(structure)
+    peaks = read_peak_options(c13, h1, given)
+    comparison = compare(given or parse_structure(structure), **peaks, **build_settings(options))
     document = compute_comparison_dict(comparison, sample, date, reviewer)
     write_result(output, _render(document, chosen))
     if output not in (None, "-"):
