@@ -29,11 +29,12 @@ class PeakModelParameters:
     """The same for water, which moves with concentration and temperature (common practice, no source)."""
     warn_offset_ppm: float
     """Offset from which a warning is given (the design's choice)."""
-    smallest_scale_ppm: float
-    """Floor for the scale of the error distribution: digits printed, temperature, concentration (common practice)."""
+    common_scale_ppm: float
+    """Added in quadrature to the error scale of every site: what moves lines without any single site's interval knowing of it
+    (temperature, concentration, digits, and that the errors of one molecule go together); fitted."""
 
 
 PARAMETERS = {
-    "13C": PeakModelParameters(0.15, 0.10, 0.30, 0.12, 0.15, 0.15, 0.30, 0.15),
-    "1H": PeakModelParameters(0.04, 0.15, 0.03, 0.012, 0.02, 0.12, 0.05, 0.02),
+    "13C": PeakModelParameters(0.15, 0.10, 0.30, 0.12, 0.15, 0.15, 0.30, 0.70),
+    "1H": PeakModelParameters(0.04, 0.15, 0.03, 0.012, 0.02, 0.12, 0.05, 0.03),
 }

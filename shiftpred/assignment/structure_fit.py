@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -68,8 +69,9 @@ def _expected_guests(expected, nucleus) -> tuple[GuestSet, ...]:
 def _gather_other_nucleus(prediction: MoleculePrediction, nucleus: str) -> dict[int, tuple]:
     """Return atom index → (shift, scale, degrees) arrays of the atom's rows of `nucleus`."""
     found: dict[int, list] = {}
-    floor = PARAMETERS[nucleus].smallest_scale_ppm
+    common = PARAMETERS[nucleus].common_scale_ppm
     for row in prediction.nuclei:
         if row.nucleus == nucleus:
-            found.setdefault(row.atom_index, []).append((row.shift_ppm, max(row.scale_ppm, floor), row.degrees_of_freedom))
+            scale = math.hypot(row.scale_ppm, common)
+            found.setdefault(row.atom_index, []).append((row.shift_ppm, scale, row.degrees_of_freedom))
     return {i: tuple(np.array(values).T) for i, values in found.items()}

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -23,9 +24,10 @@ _EXCHANGING_TOGETHER = 0.85
 """Chance that two groups which need not give one line do so all the same (common practice, no source)."""
 
 _DIASTEREOTOPIC_GAP_PPM = {"13C": 0.6, "1H": 0.05}
-_ROTAMER_GAP_PPM = {"13C": 2.0, "1H": 0.06}
+_ROTAMER_GAP_PPM = {"13C": 2.5, "1H": 0.06}
 """Half the usual distance of the lines of two groups that are alike but for stereo, or of the two groups on an amide's nitrogen:
-a prediction gives both their mean (from memory: N,N-dimethylformamide 36.5 and 31.4, N,N-dimethylacetamide 38.0 and 35.0)."""
+a prediction gives both their mean (from memory: N,N-dimethylformamide 36.5 and 31.4, N-formylpiperidine 46.6 and 40.4,
+N,N-dimethylacetamide 38.0 and 35.0)."""
 
 
 @dataclass(frozen=True)
@@ -107,7 +109,7 @@ def build_units(prediction: MoleculePrediction, nucleus: str) -> Units:
         notes.append(note)
         partner[k], together[k] = _find_partner(rows, place, sites, k)
         gap = _find_gap(mol, site, nucleus, row.hydrogen)
-        scale[k] = max(float(np.hypot(row.scale_ppm, gap)), parameters.smallest_scale_ppm)
+        scale[k] = math.hypot(row.scale_ppm, gap, parameters.common_scale_ppm)
     for atoms in find_exchanging_atoms(mol):
         _average_exchanging(rows, atoms, shift, together, partner, notes)
     return Units(

@@ -21,6 +21,11 @@ FEATURES = ("margin", "misfit", "worst", "extra", "missing", "lines", "novel", "
 """Names of the features, in the order of their columns."""
 
 
+_FOREIGN_LIST = 3.0
+"""What it costs in log likelihood for each nucleus short of half that the list belongs to solvents and impurities instead: a list
+is taken of the compound in the tube (common practice, no source)."""
+
+
 @dataclass(frozen=True)
 class FitSummary:
     """One structure's fit to all lists."""
@@ -40,6 +45,8 @@ class FitSummary:
     """Share of the units whose surroundings the training data do not hold."""
     offset: float
     """Largest reference offset that no solvent line vouches for, in units of its warning level."""
+    assigned: int = -1
+    """Units that have a line, labile ones aside; -1: not counted."""
 
 
 def compute_fit_summary(fit: StructureFit) -> FitSummary:
@@ -54,7 +61,7 @@ def compute_fit_summary(fit: StructureFit) -> FitSummary:
     FitSummary
     """
     deviances, expected, variance = [], 0.0, 0.0
-    extra = missing = lines = units = novel = 0
+    extra = missing = lines = units = novel = assigned = 0
     offset = 0.0
     for nucleus, one in fit.nuclei.items():
         found = one.terms["has_line"] & ~one.units.labile
@@ -63,6 +70,7 @@ def compute_fit_summary(fit: StructureFit) -> FitSummary:
         deviances.append(deviance)
         expected += float(((degrees + 1) / 2 * (digamma((degrees + 1) / 2) - digamma(degrees / 2))).sum())
         variance += float((((degrees + 1) / 2) ** 2 * (polygamma(1, degrees / 2) - polygamma(1, (degrees + 1) / 2))).sum())
+        assigned += int(found.sum())
         extra += len(one.leftover)
         missing += one.terms["unexcused"]
         lines += len(one.lines)
@@ -72,7 +80,7 @@ def compute_fit_summary(fit: StructureFit) -> FitSummary:
             offset = max(offset, abs(one.offset_ppm) / PARAMETERS[nucleus].warn_offset_ppm)
     together = np.concatenate(deviances) if deviances else np.zeros(0)
     return FitSummary(
-        log_evidence=fit.log_evidence,
+        log_evidence=fit.log_evidence - _FOREIGN_LIST * max(0.0, 0.5 * min(lines, units) - assigned),
         misfit=(float(together.sum()) - expected) / max(variance, 1e-9) ** 0.5 if len(together) else 0.0,
         worst=float(together.max(initial=0.0)),
         extra=extra,
@@ -81,6 +89,7 @@ def compute_fit_summary(fit: StructureFit) -> FitSummary:
         units=units,
         novel=novel / max(1, sum(len(f.units) for f in fit.nuclei.values())),
         offset=offset,
+        assigned=assigned,
     )
 
 

@@ -65,6 +65,8 @@ def decide_judgement(
         and own.extra <= gate["extra"]
         and own.missing <= gate["missing"]
         and own.lines > 0
+        # Lines that belong to solvents and impurities alone say nothing for a structure.
+        and (own.assigned < 0 or own.assigned >= max(1, _FEWEST_LINES * own.units))
     )
     if probability >= judgement_map.supported_from and passes and margin >= _CLEARLY_BETTER:
         return "supported", "", probability
@@ -75,7 +77,7 @@ def decide_judgement(
         code = "outside_training_data"
     elif own.extra >= _MIXTURE_FROM or (several_components and alone < judgement_map.supported_from):
         code = "mixture_or_salt"
-    elif own.lines < _FEWEST_LINES * own.units:
+    elif own.lines < _FEWEST_LINES * own.units or 0 <= own.assigned < max(1, _FEWEST_LINES * own.units):
         code = "too_little_evidence"
     elif alone >= judgement_map.supported_from or margin < _CLEARLY_BETTER:
         code = "rival_fits"

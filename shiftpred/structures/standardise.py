@@ -14,9 +14,11 @@ _METALS = frozenset([3, 4, 11, 12, 13, *range(19, 32), *range(37, 51), *range(55
 
 # RDKit renamed this call in 2024.09 and prints a warning at every use of the old name.
 if hasattr(Chem, "ValenceType"):
+
     def _compute_explicit_valence(atom):
         return atom.GetValence(Chem.ValenceType.EXPLICIT)
 else:
+
     def _compute_explicit_valence(atom):
         return atom.GetExplicitValence()
 

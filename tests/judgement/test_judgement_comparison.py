@@ -6,6 +6,8 @@ from pathlib import Path
 
 import pytest
 
+import shiftpred
+
 sys.path.insert(0, str(Path(__file__).resolve().parents[1] / "assignment"))
 from builder_hand_made_predictions import build_ethyl_benzoate, build_peaks, build_prediction
 
@@ -160,3 +162,10 @@ def test_an_open_judgement_never_says_as_well_of_a_rival_that_fits_much_better()
     assert 1 / 3000 < found.likelihood_ratio < 1 / 3
     assert (found.judgement, found.reason_code) == ("open", "rival_fits")
     assert "a rival fits better" in found.reasons[0]
+
+
+def test_lines_of_solvents_alone_support_nothing():
+    """Heptane's and benzene's lines beside cubane, whose one line lies at 47 ppm."""
+    found = shiftpred.compare("C12C3C4C1C5C2C3C45", c13=[14.1, 22.7, 29.7, 31.9, 128.3])
+    assert found.judgement != "supported"
+    assert all(a.observed_ppm is None for a in found.assignments)

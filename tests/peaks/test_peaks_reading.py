@@ -53,7 +53,7 @@ BAD = [
     ("13C", "shift_ppm,attached_h\n,1\n", "shift_ppm is blank"),
     ("13C", "shift_ppm,attached_h\nabc,1\n", "'abc' is not a number"),
     ("13C", "shift_ppm,attached_h\n166,6,0\n", "more cells than columns: decimal comma"),
-    ("1H", 'shift_ppm;integral\n"7,26";1\n', "decimal comma in shift_ppm"),
+    ("1H", 'shift_ppm,integral\n"7,26",1\n', "decimal comma in shift_ppm"),
     ("1H", "shift_ppm;integral\n7.26;-1\n", "integral is not positive"),
     ("1H", "shift_ppm;integral\nnan;1\n", "not finite"),
     ("13C", "shift,ppm\n1,2\n", "two columns for shift_ppm"),
