@@ -30,6 +30,8 @@ class Structure:
     """(n_atoms,) deuterium atoms on each atom; they are counted among the hydrogens of `mol`. Empty: none."""
     notes: tuple[str, ...] = ()
     """What was noticed while reading (salt, metal, isotopes, no coordinates, …), in words."""
+    drawn_hydrogens: tuple[tuple[int, int, int], ...] = ()
+    """(the user's number of a drawn hydrogen, that of the atom that bears it, isotope or 0), ascending. Empty: none drawn."""
 
     def __post_init__(self):
         if len(self.atom_numbers) != self.mol.GetNumAtoms():
@@ -308,6 +310,12 @@ class Comparison:
         from shiftpred.reporting import compute_comparison_dict
 
         return compute_comparison_dict(self)
+
+    def to_nmredata(self) -> str:
+        """The NMReDATA record (SDF, version 1.1)."""
+        from shiftpred.reporting import render_comparison_nmredata
+
+        return render_comparison_nmredata(self)
 
     def to_html(self) -> str:
         """The self-contained HTML report."""

@@ -15,7 +15,7 @@ from shiftpred.cli.options import (
 )
 from shiftpred.exit_codes import FINE, JUDGEMENT_REACHED, is_judgement_reached
 
-FORMATS = ("text", "json", "html")
+FORMATS = ("text", "json", "html", "nmredata")
 
 
 @click.command("compare", cls=ManyWords, short_help="Judge whether peaks bear a structure out; assign them; write a report.")
@@ -45,7 +45,7 @@ def command(structure, c13, h1, fail_on, format_, output, sample, reviewer, date
     peaks = read_peak_options(c13, h1, given)
     comparison = compare(given or parse_structure(structure), **peaks, **build_settings(options))
     document = compute_comparison_dict(comparison, sample, date, reviewer)
-    write_result(output, _render(document, chosen))
+    write_result(output, comparison.to_nmredata() if chosen == "nmredata" else _render(document, chosen))
     if output not in (None, "-"):
         print_message(f"{render_verdict_line(document)}; written to {output}")
     return JUDGEMENT_REACHED if is_judgement_reached(comparison.judgement, fail_on) else FINE

@@ -16,6 +16,7 @@ _FORMAT_BY_ENDING = {
     ".json": "json",
     ".csv": "csv",
     ".txt": "text",
+    ".sdf": "sdf",
 }
 
 
@@ -30,6 +31,7 @@ def choose_format(asked: str | None, output: str | None, known: tuple[str, ...])
     if asked:
         return asked
     by_ending = _FORMAT_BY_ENDING.get(PurePath(output).suffix.lower()) if output else None
+    by_ending = "nmredata" if by_ending == "sdf" and "nmredata" in known else by_ending
     return by_ending if by_ending in known else known[0]
 
 

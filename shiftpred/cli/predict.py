@@ -16,7 +16,7 @@ from shiftpred.cli.options import (
 )
 from shiftpred.exit_codes import FINE, OUR_FAULT, SOME_RECORDS_FAILED
 
-FORMATS = ("table", "csv", "json", "html")
+FORMATS = ("table", "csv", "json", "html", "sdf")
 
 
 @click.command("predict", short_help="Predict every shift of a structure, with intervals.")
@@ -75,6 +75,12 @@ def _iterate_table(outcomes: Iterable, *_settings) -> Iterator[str]:
     return iterate_prediction_table(outcomes)
 
 
+def _iterate_sdf(outcomes: Iterable, *_settings) -> Iterator[str]:
+    from shiftpred.reporting import iterate_prediction_sdf
+
+    return iterate_prediction_sdf(outcomes)
+
+
 def _iterate_json(outcomes: Iterable, edition, nucleus, solvent, coverage) -> Iterator[str]:
     from shiftpred.reporting import compute_prediction_heading, iterate_prediction_json
 
@@ -90,4 +96,4 @@ def _iterate_html(outcomes: Iterable, edition, nucleus, solvent, coverage) -> It
     return iterate_prediction_html(compute_prediction_heading(edition, nucleus, solvent, coverage, today), outcomes)
 
 
-_PIECES = {"csv": _iterate_csv, "table": _iterate_table, "json": _iterate_json, "html": _iterate_html}
+_PIECES = {"csv": _iterate_csv, "table": _iterate_table, "json": _iterate_json, "html": _iterate_html, "sdf": _iterate_sdf}

@@ -59,7 +59,16 @@ def build_structure(
     ):
         notes += ("brackets of a repeating unit are ignored: what is drawn is predicted once",)
     numbers = tuple([i + 1 for i in kept])
-    return Structure(name, standard, numbers, text or Chem.MolToSmiles(standard), deuterium, notes + found)
+    drawn = _list_drawn_hydrogens(mol, kept)
+    return Structure(name, standard, numbers, text or Chem.MolToSmiles(standard), deuterium, notes + found, drawn)
+
+
+def _list_drawn_hydrogens(mol, kept) -> tuple[tuple[int, int, int], ...]:
+    """Return number, bearer's number and isotope of the hydrogens that were folded in."""
+    if len(kept) == mol.GetNumAtoms():
+        return ()
+    folded = [mol.GetAtomWithIdx(i) for i in sorted(set(range(mol.GetNumAtoms())) - set(kept))]
+    return tuple((a.GetIdx() + 1, b.GetIdx() + 1, a.GetIsotope()) for a in folded for b in a.GetNeighbors()[:1])
 
 
 def require_readable_size(mol: Chem.Mol, where: str) -> None:

@@ -9,6 +9,7 @@ import io
 import os
 import sys
 from collections.abc import Iterable, Iterator
+from dataclasses import replace
 from itertools import chain, islice
 from pathlib import Path
 
@@ -187,7 +188,7 @@ def _parse_one(source, name, where, number="1") -> Iterator[Structure | RecordFa
 def _rename(record, name):
     if isinstance(record, RecordFailure):
         return RecordFailure(name, record.error)
-    return Structure(name, record.mol, record.atom_numbers, record.text, record.deuterium, record.notes)
+    return replace(record, name=name)
 
 
 def _parse_text(text: str, where: str, number: str) -> Iterator[Structure | RecordFailure]:

@@ -12,6 +12,7 @@ from shiftpred.structures.building import build_structure, require_readable_size
 
 __all__ = ["attempt", "parse_line", "split_line"]
 
+_CXSMILES_NOTE = "what stands between bars behind the SMILES (CXSMILES) is not used"
 _LONGEST_LINE = 20_000
 _LONG_LINE = 2_000  # from here on atoms are counted before RDKit looks for rings
 _KEY = re.compile(r"^[A-Z]{14}-[A-Z]{10}-[A-Z]$")
@@ -68,6 +69,7 @@ def parse_line(line: str, name: str, where: str) -> Structure | RecordFailure:
     """
     text, own = split_line(line)
     label = own or name
+    notes = (_CXSMILES_NOTE,) if line.strip()[len(text) :].lstrip().startswith("|") else ()
 
     def build():
         if not text:
@@ -77,9 +79,9 @@ def parse_line(line: str, name: str, where: str) -> Structure | RecordFailure:
         if "\x00" in text:
             raise StructureError(where, f"{quote(text)}, with a null character", "a SMILES", "look whether the file is text")
         if text.startswith("InChI="):
-            return build_structure(_read_inchi(text, where), label, where, text)
+            return build_structure(_read_inchi(text, where), label, where, text, notes)
         mol, is_sanitised = _read_smiles(text, where)
-        return build_structure(mol, label, where, text, is_sanitised=is_sanitised)
+        return build_structure(mol, label, where, text, notes, is_sanitised)
 
     return attempt(label, where, build)
 
