@@ -21,7 +21,7 @@ FEATURES = ("margin", "misfit", "worst", "extra", "missing", "lines", "novel", "
 """Names of the features, in the order of their columns."""
 
 
-_FOREIGN_LIST = 3.0
+_FOREIGN_LIST = 4.0
 """What it costs in log likelihood for each nucleus short of half that the list belongs to solvents and impurities instead: a list
 is taken of the compound in the tube (common practice, no source)."""
 
