@@ -75,7 +75,8 @@ def test_the_command_line_takes_the_file_alone_or_other_peaks(tmp_path):
     alone = CliRunner().invoke(command, ["compare", str(path), "--rivals", "1", "--format", "json"])
     assert alone.exit_code == 0, alone.output
     document = json.loads(alone.stdout)
-    assert (document["judgement"], len(document["peaks"]["13C"]["lines"])) == ("supported", 7)
+    assert [len(document["peaks"][n]["lines"]) for n in ("13C", "1H")] == [7, 5]
+    assert len(document["assignments"]) == 11
     other = CliRunner().invoke(command, ["compare", str(path), "--rivals", "1", "--format", "json", "--c13", "61.1, 14.3"])
     assert [line["shift_ppm"] for line in json.loads(other.stdout)["peaks"]["13C"]["lines"]] == [61.1, 14.3]
     assert "1H" not in json.loads(other.stdout)["peaks"]

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import gzip
+import time
 from pathlib import Path
 
 import pytest
@@ -239,6 +240,18 @@ def test_a_folder_gives_compounds_for_training(tmp_path):
     assert menthol.left_out == 3 and benzoate.left_out == 1
     with pytest.raises(NmredataError, match="no such file"):
         list(load_nmredata_compounds(tmp_path / "none"))
+
+
+@pytest.mark.parametrize(
+    "content",
+    ["\\\n" + "a, 1.0, 1,\n" * 30_000, "\\" + '<"' * 9000 + "\\\n" + ('<"\\;' * 4000 + "\n") * 20, "a, 1, 1\\" + "(" * 19_000],
+    ids=["an item without end", "labels without end", "brackets without end"],
+)
+def test_hostile_length_is_named_and_costs_little(content):
+    start = text_of(BENZOATE).split(">  <")[0] + ">  <NMREDATA_VERSION>\n1.1\n\n"
+    begun = time.perf_counter()
+    (record,) = parse_nmredata(f"{start}>  <NMREDATA_ASSIGNMENT>\n{content}\n\n$$$$\n")
+    assert record.problems and time.perf_counter() - begun < 8
 
 
 PIECES = st.sampled_from(

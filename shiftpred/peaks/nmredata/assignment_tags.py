@@ -84,7 +84,7 @@ def _read_row(item: Item, tag: str, drawn: DrawnAtoms | None, table: AssignmentT
     label = read_label(fields[0])
 
     def complain(came: str, would_do: str = _EXAMPLE, try_next: str = "correct that line") -> None:
-        complaints.add(item.line, tag, f"{quote(item.text)}: {came}", would_do, try_next)
+        complaints.add(item.line, tag, f"{quote(item.text[:100])}: {came}", would_do, try_next)
 
     if len(fields) < 2 or not label:
         complain("no shift behind the label" if label else "no label")
@@ -169,7 +169,7 @@ def _read_keyword(item: Item, keyword: str, content: str, tag: str, table: Assig
         complaints.add(
             item.line,
             tag,
-            f"{quote(item.text)}: {came}",
+            f"{quote(item.text[:100])}: {came}",
             "two or more labels of the assignment",
             f"{keyword.capitalize()}=a, b",
         )
@@ -179,7 +179,7 @@ def _read_keyword(item: Item, keyword: str, content: str, tag: str, table: Assig
             complaints.add(
                 item.line,
                 tag,
-                f"{quote(item.text)}: groups of different sizes",
+                f"{quote(item.text[:100])}: groups of different sizes",
                 "as many labels in each group",
                 "Interchangeable=(a, CA), (b, CB)",
             )
@@ -210,7 +210,7 @@ def parse_couplings(items: list[Item], tag: str, known: dict[str, Signal], compl
         hz = read_number(fields[2]) if len(fields) > 2 else None
         example = "two labels and hertz: 'a, b, 7.10'"
         if hz is None or not all(labels):
-            complaints.add(item.line, tag, f"{quote(item.text)}, which is no coupling", example, "correct that line")
+            complaints.add(item.line, tag, f"{quote(item.text[:100])}, which is no coupling", example, "correct that line")
             continue
         unknown = [label for label in labels if label not in known]
         if unknown:
@@ -218,7 +218,7 @@ def parse_couplings(items: list[Item], tag: str, known: dict[str, Signal], compl
             complaints.add(
                 item.line,
                 tag,
-                f"{quote(item.text)}: {named} not in the assignment",
+                f"{quote(item.text[:100])}: {named} not in the assignment",
                 "labels of the assignment",
                 "add the label",
             )
@@ -229,6 +229,6 @@ def parse_couplings(items: list[Item], tag: str, known: dict[str, Signal], compl
             if key.strip().lower() == "nb" and count is not None and 1 <= count <= _MOST_BONDS:
                 bonds = count
             elif extra:
-                complaints.add(item.line, tag, f"{quote(item.text)}: {quote(extra, 30)}", "'nb=' and the bonds", "nb=3")
+                complaints.add(item.line, tag, f"{quote(item.text[:100])}: {quote(extra, 30)}", "'nb=' and the bonds", "nb=3")
         out.append(Coupling(labels[0], labels[1], hz, bonds, item.line))
     return out

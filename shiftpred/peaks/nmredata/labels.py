@@ -23,9 +23,14 @@ class Complaints:
         self.problems: list[NmredataError] = []
         self._left_out = 0
 
+    @property
+    def is_full(self) -> bool:
+        """True once no more problems are kept."""
+        return len(self.problems) >= _MOST_PROBLEMS
+
     def add(self, line: int, tag: str, came: str, would_do: str, try_next: str) -> None:
         """Note one problem."""
-        if len(self.problems) >= _MOST_PROBLEMS:
+        if self.is_full:
             self._left_out += 1
             return
         place = f"{self.where}, line {line}" + (f", tag {quote(tag, 60)[1:-1]}" if tag else "")

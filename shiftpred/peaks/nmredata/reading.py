@@ -17,7 +17,7 @@ from shiftpred.peaks.nmredata.assignment_tags import AssignmentTable, DrawnAtoms
 from shiftpred.peaks.nmredata.contents import NmredataError, NmredataRecord
 from shiftpred.peaks.nmredata.labels import Complaints, read_whole_number
 from shiftpred.peaks.nmredata.spectrum_tags import is_1d_tag, parse_spectrum
-from shiftpred.peaks.nmredata.tag_text import Tag, split_items, split_tags
+from shiftpred.peaks.nmredata.tag_text import Item, Tag, split_items, split_tags
 from shiftpred.peaks.solvents import normalise_solvent
 from shiftpred.records import RecordFailure, Structure
 from shiftpred.structures.molfile_blocks import parse_blocks
@@ -188,10 +188,10 @@ def _parse_record(rows: list[tuple[int, str]], number: int, where: str) -> Nmred
     couplings = [
         coupling
         for tag in by_name.get("J", [])
-        for coupling in parse_couplings(split_items(tag, by_backslash), tag.name, assignment.signals, complaints)
+        for coupling in parse_couplings(_read_items(tag, by_backslash, complaints), tag.name, assignment.signals, complaints)
     ]
     spectra = [
-        parse_spectrum(split_items(tag, by_backslash), tag.name, tag.line, assignment.signals, level, complaints)
+        parse_spectrum(_read_items(tag, by_backslash, complaints), tag.name, tag.line, assignment.signals, level, complaints)
         for tag in tags
         if is_1d_tag(tag.name)
     ]
@@ -236,6 +236,15 @@ def _mend_header(lines: list[str]) -> list[str]:
     return [*(lines[:counts] + [""] * 3)[:3], *lines[counts:]]
 
 
+def _read_items(tag: Tag, by_backslash: bool, complaints: Complaints) -> list[Item]:
+    items = split_items(tag, by_backslash)
+    for item in items:
+        if item.is_cut:
+            came = f"an item of more than {len(item.text):,} characters"
+            complaints.add(item.line, tag.name, came, "shorter items", "end each item with a backslash")
+    return [item for item in items if not item.is_cut]
+
+
 def _read_single(by_name, key: str, by_backslash: bool, complaints: Complaints) -> tuple[int, str, str] | None:
     """Return (line, tag, first item) of a tag that stands once, None without one."""
     tags = by_name.get(key, [])
@@ -243,7 +252,7 @@ def _read_single(by_name, key: str, by_backslash: bool, complaints: Complaints) 
         complaints.add(tag.line, tag.name, "the same tag again", "each of these tags once", "remove one of the two")
     if not tags:
         return None
-    items = split_items(tags[0], by_backslash)
+    items = _read_items(tags[0], by_backslash, complaints)
     if not items:
         complaints.add(tags[0].line, tags[0].name, "an empty tag", "a line below the tag", "fill it in or remove it")
         return None
@@ -299,7 +308,7 @@ def _read_assignment(by_name, by_backslash: bool, drawn, level, complaints: Comp
         complaints.add(tag.line, tag.name, "a second assignment", "one assignment a record", "join the two under one tag")
     if not tags:
         return AssignmentTable()
-    table = parse_assignment(split_items(tags[0], by_backslash), tags[0].name, drawn, complaints)
+    table = parse_assignment(_read_items(tags[0], by_backslash, complaints), tags[0].name, drawn, complaints)
     if table.interchangeable and level in (0, 2):
         came = f"interchangeable labels at level {level}"
         complaints.add(tags[0].line, tags[0].name, came, "level 1 or 3", f"NMREDATA_LEVEL {level + 1}")
@@ -320,7 +329,7 @@ def _read_other(by_name, by_backslash: bool, complaints: Complaints) -> tuple[tu
         elif key not in _PLAIN_TEXT:
             passed_over.append(tags[0].name)
         for tag in tags:
-            other.append((key, "\n".join(item.text for item in split_items(tag, by_backslash))))
+            other.append((key, "\n".join(item.text for item in _read_items(tag, by_backslash, complaints))))
     notes = [f"not used: {', '.join(quote(n, 40)[1:-1] for n in passed_over[:10])}"] if passed_over else []
     return tuple(other), notes
 

@@ -81,7 +81,7 @@ def _read_signal(item, tag, nucleus, known, level, position, complaints: Complai
     fields = [piece for f in split_fields(item.text) for piece in _split_joined(f)]
 
     def complain(came: str, would_do: str = _EXAMPLE, try_next: str = "correct that line") -> None:
-        complaints.add(item.line, tag, f"{quote(item.text)}: {came}", would_do, try_next)
+        complaints.add(item.line, tag, f"{quote(item.text[:100])}: {came}", would_do, try_next)
 
     shift = _SHIFT.fullmatch(fields[0]) if len(fields[0]) <= 60 else None
     if not shift:

@@ -13,7 +13,8 @@ from dataclasses import dataclass
 __all__ = ["Item", "Tag", "split_fields", "split_items", "split_tags"]
 
 _HEADER = re.compile(r"^>[^<]*<\s*([^<>]*?)\s*>")
-_PARTS = re.compile(r'<".*?">|[^<]+|<', re.DOTALL)
+_PARTS = re.compile(r'<".{0,200}?">|[^<]+|<', re.DOTALL)  # bounded, so that hostile text costs no more than its length
+_LONGEST_ITEM = 20_000
 
 
 @dataclass(frozen=True)
@@ -33,6 +34,8 @@ class Item:
 
     line: int
     text: str
+    is_cut: bool = False
+    """True: too long to be kept whole."""
 
 
 def split_tags(rows: Iterable[tuple[int, str]]) -> tuple[list[tuple[int, str]], list[Tag], list[tuple[int, str]]]:
@@ -85,22 +88,23 @@ def split_items(tag: Tag, by_backslash: bool) -> list[Item]:
         pieces = _split_at_backslashes(tag.rows)
     else:
         pieces = [(number, text.rstrip().removesuffix("\\")) for number, text in tag.rows]
-    items = [Item(number, _drop_comment(text).strip()) for number, text in pieces]
+    items = [Item(number, _drop_comment(text[:_LONGEST_ITEM]).strip(), len(text) > _LONGEST_ITEM) for number, text in pieces]
     return [item for item in items if item.text]
 
 
 def _split_at_backslashes(rows) -> list[tuple[int, str]]:
     pieces: list[tuple[int, str]] = []
-    start, text = 0, ""
+    start, parts = 0, []
     for number, row in rows:
         *closed, rest = _split_outside_quotes(row, "\\")
         for piece in closed:
-            pieces.append((start or number, text + piece))
-            start, text = 0, ""
+            pieces.append((start or number, "".join([*parts, piece])))
+            start, parts = 0, []
         if rest.strip():
-            start, text = start or number, text + rest
-    if text:
-        pieces.append((start, text))
+            start = start or number
+            parts.append(rest)
+    if parts:
+        pieces.append((start, "".join(parts)))
     return pieces
 
 
