@@ -57,6 +57,8 @@ _WEAK = """## Known weak spots
 - Thiocarbonyl carbons, tin, mercury, selenium: large errors, and intervals that hold too seldom.
 - O-H and N-H hydrogens move with concentration and water: wide intervals, and still too narrow.
 - Sites whose assignment needs no prediction are covered somewhat less than all sites: the best assignment flatters.
+- One wrong entry among the training data pulls the prediction of a site with the same surroundings, and its interval does not know;
+  `explain` names how many atoms were measured alike and what they add.
 - Diastereomers, and E/Z isomers without a pair of shifts that tells them apart: often no more than a guess from bare 13C lines."""
 
 
