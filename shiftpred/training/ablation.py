@@ -12,7 +12,6 @@ from __future__ import annotations
 
 import argparse
 import json
-import os
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -20,6 +19,7 @@ from pathlib import Path
 import numpy as np
 
 from shiftpred.regression.environment_model import EnvironmentModel
+from shiftpred.reporting.saving import save_text
 from shiftpred.training.assemble_model import build_memory, compute_held_out_errors, place_peaks
 from shiftpred.training.fit_substituent_model import fit_to_peak_lists
 from shiftpred.training.measured_shifts import load_measured_connectivities
@@ -132,9 +132,7 @@ def compare_variants(
         )
         report(json.dumps(row))
         done["rows"].append(row)
-        temporary = folder / f"{FILE}.tmp"
-        temporary.write_text(json.dumps(done, indent=1) + "\n", encoding="utf-8")
-        os.replace(temporary, folder / FILE)
+        save_text(folder / FILE, json.dumps(done, indent=1) + "\n")
     return done
 
 

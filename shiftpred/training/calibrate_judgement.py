@@ -35,6 +35,7 @@ from shiftpred.judgement.probability import build_judgement_map
 from shiftpred.peaks import parse_peaks
 from shiftpred.predicting import predict_molecules
 from shiftpred.records import Structure
+from shiftpred.reporting.saving import save_text
 from shiftpred.structures import parse_structure
 from shiftpred.structures.rivals import build_rivals
 from shiftpred.training.corrupt_lists import CORRUPTIONS, corrupt_carbon_list, corrupt_hydrogen_list
@@ -250,7 +251,7 @@ def main(arguments: list[str] | None = None) -> int:
     else:
         parameters["cases"] = dict(parameters["cases"], rates=rates)
     if asked.output:
-        Path(asked.output).write_text(json.dumps(parameters, indent=1), encoding="utf-8")
+        save_text(asked.output, json.dumps(parameters, indent=1) + "\n")
     if asked.store and not asked.test:
         save_judgement(parameters, asked.model)
     return 0

@@ -25,6 +25,7 @@ from rdkit import Chem
 from shiftpred.errors import BundleError
 from shiftpred.features.molecule_arrays import ATOM_FEATURES, BOND_FEATURES, MoleculeArrays, build_molecule_arrays
 from shiftpred.regression.environment_model import EnvironmentModel
+from shiftpred.reporting.saving import save_text
 from shiftpred.training.measured_shifts import load_measured_connectivities
 from shiftpred.training.open_tables import load_open_tables
 from shiftpred.training.predict_graphs import predict_shifts
@@ -146,7 +147,7 @@ def train_plain_network(
             figures[split] = compute_errors(cases) | dict(compounds=len(cases))
     parameters = int(sum(a.size for a in arrays.values()))
     text = dict(settings=asdict(settings), parameters=parameters, minutes=round((time.time() - begun) / 60, 1), **figures)
-    (folder / "figures.json").write_text(json.dumps(text, indent=1) + "\n", encoding="utf-8")
+    save_text(folder / "figures.json", json.dumps(text, indent=1) + "\n")
     report(json.dumps(figures))
     return figures
 

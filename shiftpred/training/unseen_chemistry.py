@@ -19,6 +19,7 @@ import numpy as np
 import pandas as pd
 from rdkit import Chem
 
+from shiftpred.reporting.saving import save_text
 from shiftpred.training.evaluate import evaluate_model
 
 __all__ = ["FILE", "REMOVED", "measure_unseen_chemistry", "render_unseen_chemistry", "split_tables"]
@@ -109,7 +110,7 @@ def measure_unseen_chemistry(
             continue
         rows[name] = evaluate_model(folder / "model", parts[name], "all", baselines=False)["by_novelty"]
     result = dict(share=share, passes=passes, removed=REMOVED, rows=rows)
-    (folder / FILE).write_text(json.dumps(result, indent=1) + "\n", encoding="utf-8")
+    save_text(folder / FILE, json.dumps(result, indent=1) + "\n")
     return result
 
 
