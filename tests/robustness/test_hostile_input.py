@@ -7,7 +7,7 @@ import tracemalloc
 import pytest
 
 import shiftpred
-from shiftpred.errors import InputError, PeakError, ShiftpredError, StructureError
+from shiftpred.errors import InputError, PeakError, StructureError
 from shiftpred.peaks import parse_peaks
 from shiftpred.records import RecordFailure
 from shiftpred.structures import parse_structures
@@ -83,8 +83,7 @@ def test_cage_of_720_atoms():
     (found,) = parse_structures(build_tube(60))
     assert found.n_atoms == 720
     assert len(shiftpred.predict(found, nucleus="13C")) == 720
-    with pytest.raises(ShiftpredError):
-        shiftpred.compare(found, c13=[143.3])
+    assert shiftpred.compare(found, c13=[143.3], rivals=2).judgement in ("open", "contradicted")
 
 
 @pytest.mark.parametrize("nucleus", ["13C", "1H"])
